@@ -1,0 +1,183 @@
+/**
+ * The contract between the window and the program: what a user can do, as names, inputs and plain results.
+ *
+ * Types only cross this line. Both shells (Electron over IPC, loopback page over HTTP) carry exactly these calls, so
+ * no feature can live in one of them only. Inputs are validated by the operation's own schema on the other side.
+ */
+
+import type { FitState, StudyResult } from '../study/result.ts'
+import type { Candidate, Caution, Estimation, LadderPlan, Origin, Rules } from '../study/study.ts'
+
+export type * from '../study/result.ts'
+export type * from '../study/study.ts'
+
+/** A file or folder as the in-window chooser lists it. */
+export interface FolderEntry {
+  name: string
+  path: string
+  kind: 'folder' | 'plan' | 'data' | 'project'
+}
+export interface FolderListing {
+  path: string
+  parent: string | null
+  /** Folders first, then the files Rungwise can open (.yaml .yml .csv .tsv .rungwise), by name. */
+  entries: FolderEntry[]
+}
+
+/** A first look at a data file, before any study exists. */
+export interface DataPreview {
+  path: string
+  rows: number
+  columns: {
+    name: string
+    /** numeric: every answer is a number or a missing code; else what it holds instead. */
+    kind: 'numeric' | 'text'
+    missing: number
+    distinct: number
+    /** First few values as text. */
+    sample: string[]
+  }[]
+  cautions: Caution[]
+}
+
+/** A candidate as the list at the left shows it; numbers come from the result once it is fitted. */
+export interface CandidateView {
+  candidate: Candidate
+  state: 'draft' | FitState
+  origin: Origin
+  /** Made by an invariance ladder rather than written by the user. */
+  generated: boolean
+  sentence: string
+  parameters: number | null
+  df: number | null
+}
+
+/** What the grid shows while typing. */
+export interface CandidateCheck {
+  parameters: number
+  df: number
+  identified: boolean
+  /** Parameters in the null space of the information at a generic point, in words; empty when identified. */
+  unidentified: string[]
+  sentence: string
+  /** The candidate with its derivation resolved, group by group, for display in the grid. */
+  cells: GroupCellsView[]
+}
+
+/** A cell of the grid: a number is fixed, a string a parameter's label (the same label twice is an equality), null is empty. */
+export type CellView = number | string | null
+export interface GroupCellsView {
+  group: string | null
+  indicators: string[]
+  factors: string[]
+  /** indicators x factors */
+  loadings: CellView[][]
+  /** factors x factors, row = outcome */
+  regressions: CellView[][]
+  /** factors x factors, symmetric */
+  factorCovariances: CellView[][]
+  /** indicators x indicators, symmetric */
+  residualCovariances: CellView[][]
+  intercepts: CellView[] | null
+  factorMeans: CellView[] | null
+}
+
+export interface DecisionView {
+  ladder: string
+  rung: string
+  reason: string
+  /** ISO time. */
+  at: string
+}
+
+/** One row of the append-only trail. */
+export interface TrailEntry {
+  number: number
+  /** ISO time. */
+  at: string
+  /** Stable code of what happened, e.g. "candidate added". */
+  what: string
+  /** One sentence for people. */
+  sentence: string
+  /** SHA-256 chained over the row before. */
+  digest: string
+}
+
+/** Everything the window shows of the open study. */
+export interface StudyView {
+  study: string
+  /** Path of the project file, null while the study is not saved. */
+  file: string | null
+  /** True when nothing was fitted yet, so that rules may still be changed. */
+  rulesOpen: boolean
+  estimation: Estimation
+  rules: Rules
+  data: {
+    source: string
+    indicators: string[]
+    grouping: string | null
+    groups: { name: string | null; n: number; complete: number }[]
+    /** Missing answers among the indicators. */
+    missing: number
+    cautions: Caution[]
+  }
+  candidates: CandidateView[]
+  ladders: LadderPlan[]
+  /** Fitted candidates and ladders so far; drafts are not in it, and a step next to a draft is "no test". */
+  result: StudyResult
+  decisions: DecisionView[]
+  trail: { entries: TrailEntry[]; intact: boolean }
+}
+
+/** Progress of running work. `done` of `total` candidates are finished. */
+export type WorkEvent =
+  | { kind: 'started'; total: number }
+  | { kind: 'fitted'; candidate: string; state: FitState; done: number; total: number; secondsLeft: number | null }
+  | { kind: 'finished'; cancelled: boolean }
+
+/** Every call: its input and its result. A call without input takes `null`. */
+export interface Operations {
+  currentStudy: { input: null; result: StudyView | null }
+  openSample: { input: null; result: StudyView }
+  openPlan: { input: { path: string }; result: StudyView }
+  openProject: { input: { path: string }; result: StudyView }
+  listFolder: { input: { path: string | null }; result: FolderListing }
+  previewData: { input: { path: string; missingCodes: string[] }; result: DataPreview }
+  /** A new study on a data file, without candidates. */
+  newStudy: {
+    input: {
+      study: string
+      path: string
+      indicators: string[]
+      group: string | null
+      missingCodes: string[]
+      estimation: Estimation
+      rules: Rules
+    }
+    result: StudyView
+  }
+  checkCandidate: { input: { candidate: Candidate }; result: CandidateCheck }
+  addCandidate: { input: { candidate: Candidate }; result: StudyView }
+  addLadder: { input: { ladder: LadderPlan }; result: StudyView }
+  changeRules: { input: { rules: Rules }; result: StudyView }
+  /** Fits the named candidates, or (null) all that are drafts, and what their ladders generate. */
+  fitCandidates: { input: { names: string[] | null }; result: StudyView }
+  cancelWork: { input: null; result: null }
+  recordDecision: { input: { ladder: string; rung: string; reason: string }; result: StudyView }
+  saveProject: { input: { path: string }; result: StudyView }
+  exportPlan: { input: { path: string }; result: { path: string } }
+  exportResult: { input: { path: string }; result: { path: string } }
+}
+export type OperationName = keyof Operations
+
+/** What a call answers across a process boundary: bad input is a value the window shows beside the field. */
+export type Answer<T> =
+  | { ok: true; value: T }
+  | { ok: false; problem: { what: string; where: string | null; remedy: string | null } }
+
+/** What the window is given by either shell. */
+export interface Client {
+  call<N extends OperationName>(name: N, input: Operations[N]['input']): Promise<Answer<Operations[N]['result']>>
+  /** Subscribes to progress; returns the way to stop. */
+  onWork(listener: (event: WorkEvent) => void): () => void
+}

@@ -1,0 +1,162 @@
+/**
+ * A plan file (YAML 1.2) as a Plan, and back. What the keys mean is in the user's guide to the plan file.
+ *
+ * `parsePlan(writePlan(plan))` is `plan` again for every plan that `parsePlan` can yield.
+ */
+import { InputError } from './input-error.ts'
+import { readCandidates } from './plan-candidates.ts'
+import { readData } from './plan-data.ts'
+import { PlanNodes, type Spot } from './plan-nodes.ts'
+import { checkPlan } from './plan-references.ts'
+import {
+  type Estimation,
+  estimationSchema,
+  invarianceLevels,
+  type LadderPlan,
+  type Plan,
+  planSchema,
+  type Rules,
+  rulesSchema
+} from './study.ts'
+
+export { writePlan } from './plan-writer.ts'
+
+const KEYS = ['study', 'data', 'estimation', 'candidates', 'ladders', 'rules']
+
+/**
+ * @param fileName what messages call the file
+ * @throws InputError naming file, line and column for anything that is not a plan, or a plan that contradicts itself
+ */
+export function parsePlan(text: string, fileName: string): Plan {
+  const nodes = new PlanNodes(text, fileName)
+  if (nodes.root.node === null) nodes.fail(nodes.root, 'The plan is empty.', 'It needs "study:", "data:" and "candidates:".')
+  const fields = nodes.fields(nodes.root, 'The plan', KEYS, ['study', 'data', 'candidates'])
+  for (const [key, spot] of fields) nodes.mark(key, spot)
+  const [estimation, ladders, rules] = [fields.get('estimation'), fields.get('ladders'), fields.get('rules')]
+  const plan = {
+    study: nodes.name(fields.get('study')!, 'The study'),
+    data: readData(nodes, fields.get('data')!),
+    estimation: estimation === undefined ? estimationSchema.parse({}) : readEstimation(nodes, estimation),
+    candidates: readCandidates(nodes, fields.get('candidates')!),
+    ladders: ladders === undefined ? [] : readLadders(nodes, ladders),
+    rules: rules === undefined ? rulesSchema.parse({}) : readRules(nodes, rules)
+  }
+  const checked = planSchema.parse(plan)
+  refuseUnavailable(checked.estimation, (path) => nodes.placeOf(path))
+  checkPlan(checked, (path) => nodes.placeOf(path))
+  return checked
+}
+
+/**
+ * What a plan may ask for but this version cannot do yet.
+ *
+ * @throws InputError saying so
+ */
+export function refuseUnavailable(estimation: Estimation, placeOf: (path: string) => string | null = () => null): void {
+  const refuse = (key: string, value: string, remedy: string): never => {
+    throw new InputError(`"${key}: ${value}" is not available yet in this version.`, {
+      where: placeOf(`estimation.${key}`),
+      remedy
+    })
+  }
+  if (estimation.statistic !== 'normal theory') refuse('statistic', estimation.statistic, 'Use "normal theory".')
+  if (estimation.missing !== 'complete cases') refuse('missing', estimation.missing, 'Use "complete cases".')
+  if (estimation.standardErrors !== 'expected') refuse('standard errors', estimation.standardErrors, 'Use "expected".')
+}
+
+function readEstimation(nodes: PlanNodes, spot: Spot): Estimation {
+  const fields = nodes.fields(spot, 'The estimation', ['method', 'convention', 'statistic', 'missing', 'standard errors'])
+  const word = <T extends string>(key: string, words: readonly [T, ...T[]]): T => {
+    const value = fields.get(key)
+    if (value !== undefined) nodes.mark(`estimation.${key}`, value)
+    return value === undefined ? words[0] : nodes.word(value, `The ${key}`, words)
+  }
+  return {
+    method: word('method', ['maximum likelihood']),
+    convention: word('convention', ['normal', 'wishart']),
+    statistic: word('statistic', ['normal theory', 'mean-scaled']),
+    missing: word('missing', ['complete cases', 'full information']),
+    standardErrors: word('standard errors', ['expected', 'observed', 'robust'])
+  }
+}
+
+function readLadders(nodes: PlanNodes, spot: Spot): LadderPlan[] {
+  return nodes.mapping(spot, 'The ladders').map(({ key, keySpot, value }, i) => {
+    nodes.mark(`ladders.${i}`, keySpot)
+    if (nodes.has(value, 'list')) return { name: key, rungs: readRungs(nodes, value, key, `ladders.${i}`) }
+    if (!nodes.has(value, 'mapping')) {
+      nodes.fail(
+        value,
+        `The ladder "${key}" must list candidates, or say "invariance of:".`,
+        'Write it like [bottom, middle, top].'
+      )
+    }
+    const fields = nodes.fields(
+      value,
+      `The ladder "${key}"`,
+      ['invariance of', 'across', 'through'],
+      ['invariance of', 'across', 'through']
+    )
+    nodes.mark(`ladders.${i}.invariance of`, fields.get('invariance of')!)
+    nodes.mark(`ladders.${i}.across`, fields.get('across')!)
+    nodes.mark(`ladders.${i}.through`, fields.get('through')!)
+    return {
+      name: key,
+      invarianceOf: nodes.name(fields.get('invariance of')!, 'The candidate'),
+      across: nodes.name(fields.get('across')!, 'The grouping'),
+      through: nodes.word(fields.get('through')!, 'The highest step', invarianceLevels)
+    }
+  })
+}
+
+function readRungs(nodes: PlanNodes, spot: Spot, ladder: string, path: string): string[] {
+  const items = nodes.list(spot, `The ladder "${ladder}"`, '[bottom, middle, top]')
+  if (items.length === 0) nodes.fail(spot, `The ladder "${ladder}" has no rung.`, 'List its candidates, bottom first.')
+  items.forEach((item, r) => {
+    nodes.mark(`${path}.rungs.${r}`, item)
+  })
+  return items.map((item) => nodes.name(item, 'A rung'))
+}
+
+function readRules(nodes: PlanNodes, spot: Spot): Rules {
+  const fields = nodes.fields(spot, 'The rules', ['alpha', 'adjust', 'change in fit', 'decide by'])
+  const [alpha, adjust, change, decide] = [
+    fields.get('alpha'),
+    fields.get('adjust'),
+    fields.get('change in fit'),
+    fields.get('decide by')
+  ]
+  if (decide !== undefined) nodes.mark('rules.decide by', decide)
+  return {
+    alpha: alpha === undefined ? 0.05 : readAlpha(nodes, alpha),
+    adjust: adjust === undefined ? 'holm' : nodes.word(adjust, 'The adjustment', ['holm', 'none'] as const),
+    changeInFit: change === undefined ? null : readChangeInFit(nodes, change),
+    decideBy:
+      decide === undefined
+        ? 'difference test'
+        : nodes.word(decide, '"decide by"', ['difference test', 'change in fit', 'both'] as const)
+  }
+}
+
+function readAlpha(nodes: PlanNodes, spot: Spot): number {
+  const alpha = nodes.number(spot, 'alpha')
+  if (!(alpha > 0 && alpha < 1))
+    nodes.fail(spot, `alpha must lie between 0 and 1, not at ${alpha}.`, 'Write 0.05 for five percent.')
+  return alpha
+}
+
+function readChangeInFit(nodes: PlanNodes, spot: Spot): NonNullable<Rules['changeInFit']> {
+  const fields = nodes.fields(spot, 'The change in fit', ['cfi', 'rmsea', 'srmr'])
+  const threshold = (key: 'cfi' | 'rmsea' | 'srmr', sign: 1 | -1): number | null => {
+    const value = fields.get(key)
+    if (value === undefined) return null
+    const number = nodes.number(value, `The threshold of ${key}`)
+    if (number * sign < 0) {
+      const wanted =
+        sign < 0 ? 'the lowest change that still holds: zero or negative' : 'the highest change that still holds: zero or positive'
+      nodes.fail(value, `The threshold of ${key} is ${wanted}, not ${number}.`, `Write ${-number}.`)
+    }
+    return number
+  }
+  return { cfi: threshold('cfi', -1), rmsea: threshold('rmsea', 1), srmr: threshold('srmr', 1) }
+}

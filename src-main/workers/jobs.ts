@@ -1,13 +1,11 @@
 /**
  * What a fit worker is asked and what it answers: plain, structured-clonable values. No statistics here.
  */
+import type { RelationInput, RelationOutcome } from '../statistics/comparison/relation.ts'
+import type { FitOutcome, FitSettings } from '../statistics/fit/fit.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
 import type { SampleMoments } from '../statistics/moments/sample-moments.ts'
-import type { FitResult, Relation } from '../study/result.ts'
 
-export interface FitSettings {
-  convention: 'normal' | 'wishart'
-}
 
 export interface FitJob {
   kind: 'fit'
@@ -17,26 +15,9 @@ export interface FitJob {
   settings: FitSettings
 }
 
-/** `gamma` is the solution in the model's own parameter order, null when there is none. */
-export interface FitOutcome {
-  fit: FitResult
-  gamma: number[] | null
-}
-
 /** Is the model `restricted` (with its solution) nested in `general`? */
-export interface RelationJob {
+export interface RelationJob extends RelationInput {
   kind: 'relation'
-  general: ModelCells
-  generalGamma: number[]
-  restricted: ModelCells
-  restrictedGamma: number[]
-  /** Cases per group, for weighting. */
-  sizes: number[]
-}
-
-export interface RelationOutcome {
-  relation: Relation | 'reversed'
-  proof: 'constraints' | 'refit'
 }
 
 /** Runs jobs, off the calling thread where it can. A job rejects only on a bug or when `signal` aborts. */
@@ -45,3 +26,6 @@ export interface Crew {
   relation(job: RelationJob, signal?: AbortSignal): Promise<RelationOutcome>
   close(): Promise<void>
 }
+
+export type { FitOutcome, FitSettings } from '../statistics/fit/fit.ts'
+export type { RelationOutcome } from '../statistics/comparison/relation.ts'

@@ -1,0 +1,44 @@
+/**
+ * One line on a terminal that tells how far the fits are, written over itself; nothing at all in a pipe or a file.
+ */
+import type { WorkEvent } from '../operations/contract.ts'
+import { plainName } from '../reporting/text-lines.ts'
+import type { Output } from './surroundings.ts'
+
+export interface ProgressLine {
+  show(event: WorkEvent): void
+  /** Takes the line away, so that what follows starts on a clean one. */
+  clear(): void
+}
+
+export function progressLine(output: Output): ProgressLine {
+  if (output.isTTY !== true) return { show() {}, clear() {} }
+  let shown = 0
+  const write = (text: string) => {
+    const line = text.slice(0, (output.columns ?? 80) - 1)
+    output.write(`\r${line.padEnd(shown)}`)
+    shown = line.length
+  }
+  return {
+    show: (event) => write(progressText(event)),
+    clear() {
+      if (shown > 0) output.write(`\r${' '.repeat(shown)}\r`)
+      shown = 0
+    }
+  }
+}
+
+function progressText(event: WorkEvent): string {
+  switch (event.kind) {
+    case 'started':
+      return `fitting 0 of ${event.total}`
+    case 'fitted':
+      return `fitting ${event.done} of ${event.total}${timeLeft(event.secondsLeft)}, last: ${plainName(event.candidate)}`
+    case 'finished':
+      return ''
+  }
+}
+
+function timeLeft(seconds: number | null): string {
+  return seconds === null || seconds < 2 ? '' : `, about ${Math.round(seconds)} s left`
+}

@@ -5,22 +5,15 @@
  * its schema where it enters. Names of indicators, factors, groups and candidates are the user's own text.
  */
 import { z } from 'zod'
+import type { Caution } from '../statistics/fit/fit-result.ts'
+import { type CellPart, cellParts } from '../statistics/model/cells.ts'
+
+export type { Caution } from '../statistics/fit/fit-result.ts'
+export type { CellPart } from '../statistics/model/cells.ts'
 
 const name = z.string().trim().min(1)
 
-/** The kinds of cell a model is made of; the words of the plan file. */
-export const cellParts = [
-  'loading',
-  'residual variance',
-  'residual covariance',
-  'factor variance',
-  'factor covariance',
-  'intercept',
-  'factor mean',
-  'factor regression'
-] as const
 export const cellPartSchema = z.enum(cellParts)
-export type CellPart = z.infer<typeof cellPartSchema>
 
 /** How many names a cell of each part takes: one (an indicator or factor) or two. */
 export const namesOfPart: Readonly<Record<CellPart, 1 | 2>> = {
@@ -207,10 +200,3 @@ interface DataSetBase {
 export type DataSet =
   | (DataSetBase & { kind: 'rows'; groups: RowGroup[] })
   | (DataSetBase & { kind: 'summary'; divisor: 'n' | 'n-1'; groups: SummaryGroup[] })
-
-/** A stated caution: a stable code, a sentence for the user, and the cell (names) it is about, or null. */
-export interface Caution {
-  code: string
-  message: string
-  cell: string[] | null
-}

@@ -6,7 +6,6 @@ import type { FitOutcome, FitSettings } from '../statistics/fit/fit.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
 import type { SampleMoments } from '../statistics/moments/sample-moments.ts'
 
-
 export interface FitJob {
   kind: 'fit'
   candidate: string
@@ -27,5 +26,5 @@ export interface Crew {
   close(): Promise<void>
 }
 
-export type { FitOutcome, FitSettings } from '../statistics/fit/fit.ts'
 export type { RelationOutcome } from '../statistics/comparison/relation.ts'
+export type { FitOutcome, FitSettings } from '../statistics/fit/fit.ts'

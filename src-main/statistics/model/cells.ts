@@ -5,6 +5,19 @@
  * two cells or groups is an equality constraint. `constraints` adds linear equations among labels (effects coding).
  */
 
+/** The kinds of cell a model is made of; the words of the trade. */
+export const cellParts = [
+  'loading',
+  'residual variance',
+  'residual covariance',
+  'factor variance',
+  'factor covariance',
+  'intercept',
+  'factor mean',
+  'factor regression'
+] as const
+export type CellPart = (typeof cellParts)[number]
+
 /** A number is fixed, a string a free parameter's label. */
 export type Cell = number | string
 

@@ -1,0 +1,184 @@
+/**
+ * The optimiser: Fisher scoring with step control, sharpened by quasi-Newton pairs.
+ *
+ * Each iteration solves with the expected second derivatives at the current point, corrected by up to eight pairs of
+ * (step, gradient change) through the two-loop recursion (Nocedal & Wright 2006, algorithm 7.4), so that a badly fitting
+ * model, where scoring alone is only linearly convergent, still ends fast. A damped matrix (Levenberg 1944; Marquardt
+ * 1963) takes over where the information is singular or a step does not descend.
+ */
+import { cholesky, choleskySolve } from '../matrix/symmetric.ts'
+import type { Objective } from './normal-likelihood.ts'
+
+export interface ScoringSettings {
+  /** Converged when max |g_k| scale_k is below this; scale_k = 1 / sqrt(curvature_kk), the parameter's own unit. */
+  readonly tolerance: number
+  readonly iterations: number
+}
+
+export const ordinaryScoring: ScoringSettings = Object.freeze({ tolerance: 1e-9, iterations: 500 })
+
+export type StopReason = 'converged' | 'iteration limit' | 'no descent' | 'bad start'
+
+export interface Minimum {
+  stop: StopReason
+  gamma: Float64Array
+  /** F at gamma; NaN after a bad start. */
+  value: number
+  gradient: Float64Array
+  /** Expected second derivatives of F at gamma, q x q, lower triangle. */
+  curvature: Float64Array
+  iterations: number
+  /** max |g_k| scale_k */
+  largestGradient: number
+}
+
+const pairsKept = 8
+const halvings = 10
+
+/** Minimises from `start` (length q, left untouched). Never throws: how it ended is `stop`. */
+export function minimise(objective: Objective, start: Float64Array, settings: ScoringSettings = ordinaryScoring): Minimum {
+  const q = objective.parameters
+  const point: Minimum = {
+    stop: 'iteration limit',
+    gamma: Float64Array.from(start),
+    value: Number.NaN,
+    gradient: new Float64Array(q),
+    curvature: new Float64Array(q * q),
+    iterations: 0,
+    largestGradient: Number.NaN
+  }
+  point.value = objective.evaluate(point.gamma, point.gradient, point.curvature)
+  if (Number.isNaN(point.value)) return { ...point, stop: 'bad start' }
+  const search: Search = {
+    objective,
+    pairs: [],
+    damping: 0,
+    trial: new Float64Array(q),
+    direction: new Float64Array(q),
+    factor: new Float64Array(q * q)
+  }
+  for (; point.iterations < settings.iterations; point.iterations++) {
+    point.largestGradient = scaledGradient(point.gradient, point.curvature)
+    if (point.largestGradient < settings.tolerance) {
+      point.stop = 'converged'
+      break
+    }
+    if (!advance(search, point)) {
+      point.stop = 'no descent'
+      break
+    }
+  }
+  point.largestGradient = scaledGradient(point.gradient, point.curvature)
+  return point
+}
+
+interface Search {
+  objective: Objective
+  pairs: { s: Float64Array; y: Float64Array; rho: number }[]
+  damping: number
+  trial: Float64Array
+  direction: Float64Array
+  factor: Float64Array
+}
+
+/** max |g_k| / sqrt(h_kk): free of the indicators' units. */
+function scaledGradient(gradient: Float64Array, curvature: Float64Array): number {
+  const q = gradient.length
+  let largest = 0
+  for (let k = 0; k < q; k++) {
+    const h = curvature[k * q + k]!
+    largest = Math.max(largest, Math.abs(gradient[k]!) / (h > 0 ? Math.sqrt(h) : 1))
+  }
+  return largest
+}
+
+/** One accepted step from `point`, or false when no step descends at any damping. */
+function advance(search: Search, point: Minimum): boolean {
+  for (let attempt = 0; attempt < 40; attempt++) {
+    if (factorDamped(search, point.curvature)) {
+      const slope = findDirection(search, point.gradient)
+      const length = slope < 0 ? lineSearch(search, point, slope) : 0
+      if (length > 0) {
+        accept(search, point, length)
+        return true
+      }
+    }
+    search.pairs = []
+    search.damping = search.damping === 0 ? 1e-4 : search.damping * 5
+    if (search.damping > 1e12) return false
+  }
+  return false
+}
+
+/** factor = cholesky(H + damping diag H) */
+function factorDamped(search: Search, curvature: Float64Array): boolean {
+  const q = search.direction.length
+  search.factor.set(curvature)
+  for (let k = 0; k < q; k++) {
+    const h = curvature[k * q + k]!
+    search.factor[k * q + k] = h * (1 + search.damping) + (h > 0 ? 0 : search.damping)
+  }
+  return cholesky(search.factor, q, search.factor)
+}
+
+/** direction = -(corrected H)^-1 g; returns g' direction. */
+function findDirection(search: Search, gradient: Float64Array): number {
+  const { direction, pairs, factor } = search
+  const q = direction.length
+  direction.set(gradient)
+  const alphas: number[] = []
+  for (let i = pairs.length - 1; i >= 0; i--) {
+    const { s, y, rho } = pairs[i]!
+    const alpha = rho * dot(s, direction)
+    alphas[i] = alpha
+    for (let k = 0; k < q; k++) direction[k]! -= alpha * y[k]!
+  }
+  choleskySolve(factor, q, direction)
+  for (let i = 0; i < pairs.length; i++) {
+    const { s, y, rho } = pairs[i]!
+    const beta = alphas[i]! - rho * dot(y, direction)
+    for (let k = 0; k < q; k++) direction[k]! += beta * s[k]!
+  }
+  for (let k = 0; k < q; k++) direction[k] = -direction[k]!
+  return dot(gradient, direction)
+}
+
+/** The longest of 1, 1/2, 1/4 ... that descends enough (Armijo); 0 when none does. Rounding in F is allowed for. */
+function lineSearch(search: Search, point: Minimum, slope: number): number {
+  const { trial, direction, objective } = search
+  const q = direction.length
+  const noise = 1e-14 * (1 + Math.abs(point.value))
+  let length = 1
+  for (let i = 0; i < halvings; i++, length /= 2) {
+    for (let k = 0; k < q; k++) trial[k] = point.gamma[k]! + length * direction[k]!
+    const value = objective.evaluate(trial)
+    if (value <= point.value + 1e-4 * length * slope + noise) return length
+  }
+  return 0
+}
+
+/** Moves `point` to the trial point, remembers the pair and eases the damping after a full step. */
+function accept(search: Search, point: Minimum, length: number): void {
+  const q = search.direction.length
+  const s = new Float64Array(q)
+  const y = new Float64Array(q)
+  for (let k = 0; k < q; k++) {
+    s[k] = search.trial[k]! - point.gamma[k]!
+    y[k] = -point.gradient[k]!
+  }
+  point.gamma.set(search.trial)
+  point.value = search.objective.evaluate(point.gamma, point.gradient, point.curvature)
+  for (let k = 0; k < q; k++) y[k]! += point.gradient[k]!
+  const curvature = dot(s, y)
+  if (curvature > 1e-10 * Math.sqrt(dot(s, s) * dot(y, y))) {
+    search.pairs.push({ s, y, rho: 1 / curvature })
+    if (search.pairs.length > pairsKept) search.pairs.shift()
+  }
+  if (length === 1) search.damping = search.damping < 1e-5 ? 0 : search.damping / 10
+}
+
+function dot(a: Float64Array, b: Float64Array): number {
+  let sum = 0
+  for (let k = 0; k < a.length; k++) sum += a[k]! * b[k]!
+  return sum
+}

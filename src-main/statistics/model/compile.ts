@@ -1,0 +1,187 @@
+/**
+ * A model of cells, compiled: every free cell of every group knows where it stands and which gammas make it.
+ *
+ * theta (one entry a label) obeys theta = K gamma + c (methods: section 1). Without linear constraints K is the identity;
+ * with them the pivots are eliminated, so that gamma is a subset of theta and the q gammas are independent.
+ */
+import type { Cell, GroupCells, LinearConstraint, ModelCells } from './cells.ts'
+
+export type MatrixName = 'lambda' | 'beta' | 'psi' | 'theta' | 'nu' | 'alpha'
+
+/** One free cell: where it stands and its row of K. A symmetric pair is one cell with row >= column. */
+export interface FreeCell {
+  matrix: MatrixName
+  row: number
+  column: number
+  label: string
+  /** Index into theta. */
+  theta: number
+  /** value = constant + sum_k weights[k] gamma[gammas[k]] */
+  constant: number
+  gammas: Int32Array
+  weights: Float64Array
+}
+
+export interface CompiledGroup {
+  name: string | null
+  /** Values of the fixed cells, 0 where free: p x m, m x m, m x m, p x p, p, m. */
+  lambda: Float64Array
+  beta: Float64Array
+  psi: Float64Array
+  theta: Float64Array
+  nu: Float64Array
+  alpha: Float64Array
+  free: FreeCell[]
+}
+
+export interface CompiledModel {
+  indicators: string[]
+  factors: string[]
+  groups: CompiledGroup[]
+  /** Labels of theta, in order of first appearance. */
+  labels: string[]
+  /** The label each gamma is named after. */
+  gammaLabels: string[]
+  /** q = length of gamma. */
+  parameters: number
+  meanStructure: boolean
+  /** True when some factor has predictors, i.e. B is not zero. */
+  hasRegressions: boolean
+  /** sum_g [p(p+1)/2 (+ p)] - q; may be negative for a model with too many parameters. */
+  df: number
+}
+
+/** Compiles; throws a plain Error on cells of wrong shape or contradictory constraints (a bug of the caller). */
+export function compileModel(model: ModelCells): CompiledModel {
+  const p = model.indicators.length
+  const meanStructure = model.groups[0]?.intercepts != null
+  const theta = new Map<string, number>()
+  const groups = model.groups.map((cells) => compileGroup(cells, p, model.factors.length, theta))
+  const labels = [...theta.keys()]
+  const rows = reduce(labels, model.constraints)
+  for (const group of groups) for (const cell of group.free) Object.assign(cell, rows.cells[cell.theta])
+  const moments = groups.length * ((p * (p + 1)) / 2 + (meanStructure ? p : 0))
+  return {
+    indicators: model.indicators,
+    factors: model.factors,
+    groups,
+    labels,
+    gammaLabels: rows.gammaLabels,
+    parameters: rows.gammaLabels.length,
+    meanStructure,
+    hasRegressions: groups.some((g) => g.beta.some((v) => v !== 0) || g.free.some((c) => c.matrix === 'beta')),
+    df: moments - rows.gammaLabels.length
+  }
+}
+
+/** Where a matrix's cells stand: its name, its source and whether only the lower triangle counts. */
+function compileGroup(cells: GroupCells, p: number, m: number, theta: Map<string, number>): CompiledGroup {
+  const group: CompiledGroup = {
+    name: cells.name,
+    lambda: new Float64Array(p * m),
+    beta: new Float64Array(m * m),
+    psi: new Float64Array(m * m),
+    theta: new Float64Array(p * p),
+    nu: new Float64Array(p),
+    alpha: new Float64Array(m),
+    free: []
+  }
+  const place = (matrix: MatrixName, row: number, column: number, columns: number, cell: Cell, symmetric: boolean) => {
+    if (typeof cell === 'number') {
+      group[matrix][row * columns + column] = cell
+      return
+    }
+    if (symmetric && column > row) return
+    if (!theta.has(cell)) theta.set(cell, theta.size)
+    group.free.push(freeCell(matrix, row, column, cell, theta.get(cell)!))
+  }
+  const sheet = (matrix: MatrixName, rows: Cell[][], columns: number, symmetric = false) => {
+    rows.forEach((line, row) => {
+      if (line.length !== columns) throw new Error(`${matrix} has a row of ${line.length} cells, not ${columns}`)
+      line.forEach((cell, column) => {
+        place(matrix, row, column, columns, cell, symmetric)
+      })
+    })
+  }
+  sheet('lambda', cells.loadings, m)
+  sheet('beta', cells.regressions, m)
+  sheet('psi', cells.factorCovariances, m, true)
+  sheet('theta', cells.residualCovariances, p, true)
+  cells.intercepts?.forEach((cell, row) => {
+    place('nu', row, 0, 1, cell, false)
+  })
+  cells.factorMeans?.forEach((cell, row) => {
+    place('alpha', row, 0, 1, cell, false)
+  })
+  return group
+}
+
+function freeCell(matrix: MatrixName, row: number, column: number, label: string, theta: number): FreeCell {
+  return { matrix, row, column, label, theta, constant: 0, gammas: new Int32Array(), weights: new Float64Array() }
+}
+
+interface ReducedRow {
+  constant: number
+  gammas: Int32Array
+  weights: Float64Array
+}
+
+/** Gauss-Jordan elimination of A theta = b; the largest coefficient of each equation is its pivot. */
+function reduce(labels: string[], constraints: LinearConstraint[]): { cells: ReducedRow[]; gammaLabels: string[] } {
+  const t = labels.length
+  const index = new Map(labels.map((label, i) => [label, i]))
+  const equations = constraints.map((constraint) => {
+    const row = new Float64Array(t + 1)
+    for (const term of constraint.terms) {
+      const at = index.get(term.label)
+      if (at === undefined) throw new Error(`constraint names the unknown label ${term.label}`)
+      row[at]! += term.weight
+    }
+    row[t] = constraint.equals
+    return row
+  })
+  const pivots = eliminate(equations, t)
+  const gammaOf = new Map<number, number>()
+  for (let i = 0; i < t; i++) if (!pivots.has(i)) gammaOf.set(i, gammaOf.size)
+  const cells = labels.map((_, i) => reducedRow(i, t, pivots.get(i), gammaOf))
+  return { cells, gammaLabels: labels.filter((_, i) => gammaOf.has(i)) }
+}
+
+function eliminate(equations: Float64Array[], t: number): Map<number, Float64Array> {
+  const pivots = new Map<number, Float64Array>()
+  for (const row of equations) {
+    let pivot = 0
+    for (let i = 1; i < t; i++) if (Math.abs(row[i]!) > Math.abs(row[pivot]!)) pivot = i
+    const size = row[pivot] ?? 0
+    if (Math.abs(size) < 1e-12) {
+      if (Math.abs(row[t]!) > 1e-12) throw new Error('the constraints contradict each other')
+      continue
+    }
+    for (let i = 0; i <= t; i++) row[i]! /= size
+    for (const other of equations) {
+      const factor = other === row ? 0 : other[pivot]!
+      if (factor !== 0) for (let i = 0; i <= t; i++) other[i]! -= factor * row[i]!
+    }
+    pivots.set(pivot, row)
+  }
+  return pivots
+}
+
+function reducedRow(i: number, t: number, equation: Float64Array | undefined, gammaOf: Map<number, number>): ReducedRow {
+  if (equation === undefined) return { constant: 0, gammas: Int32Array.of(gammaOf.get(i)!), weights: Float64Array.of(1) }
+  const gammas: number[] = []
+  const weights: number[] = []
+  for (const [column, gamma] of gammaOf) {
+    if (equation[column] === 0) continue
+    gammas.push(gamma)
+    weights.push(-equation[column]!)
+  }
+  return { constant: equation[t]!, gammas: Int32Array.from(gammas), weights: Float64Array.from(weights) }
+}
+
+/** The value of a free cell at gamma. */
+export function cellValue(cell: FreeCell, gamma: Float64Array): number {
+  let value = cell.constant
+  for (let k = 0; k < cell.gammas.length; k++) value += cell.weights[k]! * gamma[cell.gammas[k]!]!
+  return value
+}

@@ -21,7 +21,7 @@ export interface Table {
 export function readTable(input: Uint8Array | string, fileName: string): Table {
   const text = (typeof input === 'string' ? input.replace(/^\uFEFF/, '') : decode(input, fileName))
     .replace(/\r\n?/g, '\n')
-    .trimEnd()
+    .replace(/(\n *)+$/, '')
   if (text.trim() === '')
     throw new InputError('The file is empty.', { where: fileName, remedy: 'A header and at least one row are wanted.' })
   const records = readRecords(text, findDelimiter(text, fileName), fileName)

@@ -54,7 +54,7 @@ async function doCommand(words: readonly string[], around: Surroundings, crewMak
 
 function explain(error: unknown, around: Surroundings): number {
   if (around.signal.aborted) {
-    around.stderr.write('Stopped; nothing was written.\n')
+    around.stderr.write('Stopped.\n')
     return interrupted
   }
   if (error instanceof InputError) {

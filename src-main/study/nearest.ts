@@ -16,12 +16,17 @@ export function nearestWord(word: string, known: readonly string[]): string | nu
   return best
 }
 
+/** 'Did you mean "x"?', or null when no known word is close enough to have been meant. */
+export function nearest(word: string, known: readonly string[]): string | null {
+  const found = nearestWord(word, known)
+  return found !== null && isClose(word, found) ? `Did you mean "${found}"?` : null
+}
+
 /** 'Did you mean "x"?' when some word is close enough to have been meant, and always what is known. */
 export function didYouMean(word: string, known: readonly string[], what: string): string {
-  const nearest = nearestWord(word, known)
-  if (nearest === null) return `There are no ${what}.`
-  const close = editDistance(word.toLowerCase(), nearest.toLowerCase()) <= Math.max(2, Math.floor(word.length / 3))
-  return `${close ? `Did you mean "${nearest}"? ` : ''}The ${what} are ${listed(known)}.`
+  if (known.length === 0) return `There are no ${what}.`
+  const meant = nearest(word, known)
+  return `${meant === null ? '' : `${meant} `}The ${what} are ${listed(known)}.`
 }
 
 /** "a, b and c", cut after a dozen. */
@@ -29,6 +34,10 @@ export function listed(words: readonly string[]): string {
   const shown = words.slice(0, 12).map((word) => `"${word}"`)
   if (words.length > 12) return `${shown.join(', ')} and ${words.length - 12} more`
   return shown.length < 2 ? shown.join('') : `${shown.slice(0, -1).join(', ')} and ${shown.at(-1)}`
+}
+
+function isClose(word: string, known: string): boolean {
+  return editDistance(word.toLowerCase(), known.toLowerCase()) <= Math.max(2, Math.floor(word.length / 3))
 }
 
 /** Insertions, deletions, replacements and swaps of neighbours that turn one word into the other (optimal string alignment). */

@@ -75,7 +75,13 @@ function logLowerQuantile(lowerTail: number, df: number): number {
       const logLower = logLowerGamma(a, half)
       return { value: logLower - logTail, slope: a * Math.exp(logPoissonTerm(a, half) - logLower) }
     },
-    { start: Math.max(leading, approximate), low: Number.NEGATIVE_INFINITY, high: Number.POSITIVE_INFINITY, rising: true, noise: 1e-15 }
+    {
+      start: Math.max(leading, approximate),
+      low: Number.NEGATIVE_INFINITY,
+      high: Number.POSITIVE_INFINITY,
+      rising: true,
+      noise: 1e-15
+    }
   )
 }
 

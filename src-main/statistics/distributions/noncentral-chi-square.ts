@@ -1,11 +1,13 @@
+import { chiSquareLower, chiSquareUpper } from './chi-square.ts'
 import { logLowerGamma, logPoissonTerm, logUpperGamma } from './gamma.ts'
 import { roughUpperQuantile } from './normal.ts'
 import { monotoneRoot } from './root.ts'
-import { chiSquareLower, chiSquareUpper } from './chi-square.ts'
 
 /** Terms this much below the largest one are left out on the far side of the sum. */
 const NEGLIGIBLE = 1e-20
 const ROUNDING = 2 ** -53
+/** Beyond this a sum would take seconds; no test statistic of ours comes near. */
+const LARGEST = 1e10
 
 /** One tail on the log scale, with d ln(tail) / d lambda, which the same sum yields. */
 interface Tail {
@@ -168,5 +170,6 @@ function roughNoncentrality(x: number, df: number, lowerTailProbability: number)
 function requireArguments(x: number, df: number, lambda: number): void {
   if (Number.isNaN(x)) throw new RangeError('a chi-square value that is not a number has no tail')
   if (!(df > 0 && df < Number.POSITIVE_INFINITY)) throw new RangeError(`positive degrees of freedom are needed, not ${df}`)
-  if (!(lambda >= 0 && lambda < Number.POSITIVE_INFINITY)) throw new RangeError(`a noncentrality of at least 0 is needed, not ${lambda}`)
+  if (x > LARGEST && x < Number.POSITIVE_INFINITY) throw new RangeError(`a chi-square value up to ${LARGEST} is needed, not ${x}`)
+  if (!(lambda >= 0 && lambda <= LARGEST)) throw new RangeError(`a noncentrality from 0 to ${LARGEST} is needed, not ${lambda}`)
 }

@@ -1,7 +1,7 @@
 import { logUpperGamma, upperGamma } from './gamma.ts'
 import { monotoneRoot } from './root.ts'
 
-const HALF_LOG_TWO_PI = 0.9189385332046727418
+const HALF_LOG_TWO_PI = 0.9189385332046728
 const LOG_HALF = -Math.LN2
 
 /** P(Z > z) for a standard normal Z; relative error below 1e-12 down to 1e-300. From Q(1/2, z^2/2) (Abramowitz & Stegun 1964, 7.1 and 26.4.19). */

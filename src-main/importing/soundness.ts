@@ -71,7 +71,7 @@ export function checkSize(n: number, p: number, group: string | null, where: str
 
 export function smallSample(n: number, group: string | null): Caution[] {
   if (n >= FEW_CASES) return []
-  const message = `Only ${n} cases${inGroup(group)}: the exact-fit test is not to be relied on with fewer than about ${FEW_CASES}.`
+  const message = `Only ${n} cases${inGroup(group)}: tests and standard errors lean on theory for large samples, so read them with care below about ${FEW_CASES}.`
   return [{ code: 'small-sample', message, cell: null }]
 }
 

@@ -141,7 +141,12 @@ function readAnswer(text: string, missing: ReadonlySet<string>, where: () => str
 
 /** In order of first appearance. */
 function splitByGroup(kept: readonly Answered[], p: number): RowGroup[] {
-  const rows = Map.groupBy(kept, (row) => row.group)
+  const rows = new Map<string | null, Answered[]>()
+  for (const row of kept) {
+    const members = rows.get(row.group)
+    if (members === undefined) rows.set(row.group, [row])
+    else members.push(row)
+  }
   return [...rows].map(([name, members]) => {
     const values = new Float64Array(members.length * p)
     members.forEach((row, i) => {

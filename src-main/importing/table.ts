@@ -97,12 +97,24 @@ function readRecords(text: string, delimiter: string, fileName: string): Row[] {
     }))
   } catch (error) {
     if (!(error instanceof CsvError)) throw error
-    const line = 'lines' in error ? `, line ${error['lines']}` : ''
+    const line = error.code === 'CSV_QUOTE_NOT_CLOSED' ? lineOfOpenQuote(text) : error['lines']
     throw new InputError(quoteProblem(error.code), {
-      where: fileName + line,
+      where: `${fileName}, line ${line}`,
       remedy: 'Inside quotes a quote is written twice, and the whole cell stands in quotes.'
     })
   }
+}
+
+/** The line of the quote that is still open at the end of the text. */
+function lineOfOpenQuote(text: string): number {
+  let [line, opened, open] = [1, 1, false]
+  for (const sign of text) {
+    if (sign === '\n') line++
+    if (sign !== '"') continue
+    open = !open
+    if (open) opened = line
+  }
+  return opened
 }
 
 function quoteProblem(code: string): string {

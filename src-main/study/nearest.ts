@@ -37,7 +37,8 @@ export function listed(words: readonly string[]): string {
 }
 
 function isClose(word: string, known: string): boolean {
-  return editDistance(word.toLowerCase(), known.toLowerCase()) <= Math.max(2, Math.floor(word.length / 3))
+  const edits = editDistance(word.toLowerCase(), known.toLowerCase())
+  return edits < word.length && edits <= Math.max(1, Math.floor(word.length / 3))
 }
 
 /** Insertions, deletions, replacements and swaps of neighbours that turn one word into the other (optimal string alignment). */

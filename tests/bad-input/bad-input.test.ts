@@ -1,0 +1,64 @@
+/**
+ * Walks the table of broken input through reading the plan and loading its data.
+ */
+import { describe, expect, it } from 'vitest'
+import { readDelimited } from '../../src-main/importing/delimited.ts'
+import { loadData } from '../../src-main/importing/load-data.ts'
+import { InputError } from '../../src-main/study/input-error.ts'
+import { parsePlan } from '../../src-main/study/plan-file.ts'
+import { checkPlanAgainstData } from '../../src-main/study/plan-references.ts'
+import { type BadInput, badInputs, soundInputs } from './cases.ts'
+
+function readStudy({ plan, files }: Pick<BadInput, 'plan' | 'files'>): void {
+  const parsed = parsePlan(plan, 'plan.yaml')
+  const data = loadData(parsed.data, (path) => {
+    const text = files[path]
+    if (text === undefined) throw Object.assign(new Error(`no ${path}`), { code: 'ENOENT' })
+    return new TextEncoder().encode(text)
+  })
+  checkPlanAgainstData(parsed, data)
+}
+
+function refusal(work: () => void): unknown {
+  try {
+    work()
+    return null
+  } catch (error) {
+    return error
+  }
+}
+
+describe('bad input is refused with its message:', () => {
+  it.each(badInputs)('$name', (one) => {
+    const error = refusal(() => readStudy(one))
+    expect(error).toBeInstanceOf(InputError)
+    expect((error as InputError).message).toContain(one.message)
+    expect((error as InputError).where).not.toBeNull()
+  })
+})
+
+describe('the table', () => {
+  it('has at least sixty cases, none of them twice', () => {
+    expect(badInputs.length).toBeGreaterThanOrEqual(60)
+    expect(new Set(badInputs.map((one) => one.name)).size).toBe(badInputs.length)
+    expect(new Set(badInputs.map((one) => JSON.stringify([one.plan, one.files]))).size).toBe(badInputs.length)
+  })
+
+  it.each(soundInputs)('breaks nothing but what it says: $name is read', (one) => {
+    expect(refusal(() => readStudy(one))).toBeNull()
+  })
+})
+
+describe('bytes that are no text in UTF-8 are refused:', () => {
+  const options = { fileName: 'a.csv', indicators: ['a'], group: null, missingCodes: [] }
+  it.each([
+    { name: 'an older encoding', bytes: [0x61, 0x0a, 0x31, 0x0a, 0xe9, 0x0a], message: 'a.csv, line 3: The file is not in UTF-8.' },
+    { name: 'UTF-16', bytes: [0xff, 0xfe, 0x61, 0x00, 0x0a, 0x00], message: 'a.csv: The file is in UTF-16, not in UTF-8.' },
+    { name: 'a picture', bytes: [0x89, 0x50, 0x4e, 0x47, 0x00, 0x01], message: 'a.csv: This is not a text file.' }
+  ])('$name', ({ bytes, message }) => {
+    expect(refusal(() => readDelimited(Uint8Array.from(bytes), options))).toMatchObject({
+      name: 'InputError',
+      message: expect.stringContaining(message)
+    })
+  })
+})

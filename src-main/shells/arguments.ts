@@ -10,7 +10,8 @@ export type Command =
   | { do: 'compare'; plan: string; project: string | null; json: string | null }
   | { do: 'open'; file: string | null }
 
-export const helpText = `rungwise: compares nested measurement models and shows how far up the ladder one can stand.
+export const helpText = `rungwise: compares nested measurement models and shows how far up the ladder
+one can stand.
 
 Usage:
   rungwise compare PLAN.yaml [--project FILE] [--json FILE]
@@ -19,14 +20,14 @@ Usage:
   rungwise --version
 
 compare   fits the plan's candidates and prints each ladder, top rung first.
-  --project FILE   also record data, candidates, fits and steps in this project file
-                   (made if it is not there)
+  --project FILE   also record data, candidates, fits and steps in this project
+                   file (made if it is not there)
   --json FILE      also write the result as JSON; "-" writes it to standard output
                    in place of the text
-open      opens the window, on a plan, on a project file, or on the sample study.
+open      opens the window on a plan, a project file, or the sample study.
 
-Exit status: 0 done, 1 a fault of the program, 2 bad input (one message on standard
-error, nothing written), 130 interrupted.
+Exit status: 0 done, 1 a fault of the program, 2 bad input (one message on
+standard error, nothing written), 130 interrupted.
 `
 
 const commands = ['compare', 'open', 'help', 'version'] as const

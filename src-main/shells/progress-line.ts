@@ -14,28 +14,31 @@ export interface ProgressLine {
 export function progressLine(output: Output): ProgressLine {
   if (output.isTTY !== true) return { show() {}, clear() {} }
   let shown = 0
-  const write = (text: string) => {
-    const line = text.slice(0, (output.columns ?? 80) - 1)
-    output.write(`\r${line.padEnd(shown)}`)
-    shown = line.length
+  const clear = () => {
+    if (shown > 0) output.write(`\r${' '.repeat(shown)}\r`)
+    shown = 0
   }
   return {
-    show: (event) => write(progressText(event)),
-    clear() {
-      if (shown > 0) output.write(`\r${' '.repeat(shown)}\r`)
-      shown = 0
+    clear,
+    show(event) {
+      const text = progressText(event)
+      if (text === null) return clear()
+      const line = text.slice(0, (output.columns ?? 80) - 1)
+      output.write(`\r${line.padEnd(shown)}`)
+      shown = Math.max(shown, line.length)
     }
   }
 }
 
-function progressText(event: WorkEvent): string {
+/** Null when there is nothing more to wait for. */
+function progressText(event: WorkEvent): string | null {
   switch (event.kind) {
     case 'started':
       return `fitting 0 of ${event.total}`
     case 'fitted':
       return `fitting ${event.done} of ${event.total}${timeLeft(event.secondsLeft)}, last: ${plainName(event.candidate)}`
     case 'finished':
-      return ''
+      return null
   }
 }
 

@@ -8,6 +8,7 @@ import { join } from 'node:path'
 import { _electron, type ElectronApplication } from 'playwright-core'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import type { Answer, Client, OperationName, Operations, WorkEvent } from '../../src-main/operations/contract.ts'
+import { statistic } from '../../src-main/reporting/numbers.ts'
 import { findRuntime, runtimeArguments } from '../../src-main/shells/electron-runtime.ts'
 import type { StudyResult } from '../../src-main/study/result.ts'
 import { launcher, machineNode, resultOf, root } from './program.ts'
@@ -110,21 +111,27 @@ if (runtime === null || !canShow) {
     })
     afterAll(() => app.close())
 
-    test('opens on the sample study and shows its ladder', async () => {
-      const page = await app.firstWindow()
-      for (const name of fromCommandLine.ladders[0]!.rungs) {
-        await page.getByText(name, { exact: true }).first().waitFor()
+    test('opens on the sample study, fits it and shows its ladder, top rung first', async () => {
+      const window = await app.firstWindow()
+      const ladder = fromCommandLine.ladders[0]!
+      const rungs = window.getByTestId('rung')
+      await window.getByTestId('stand-here').waitFor()
+      await expect
+        .poll(() => rungs.evaluateAll((all) => all.map((rung) => rung.getAttribute('data-name'))))
+        .toEqual([...ladder.rungs].reverse())
+      for (const name of ladder.rungs) {
+        const { T } = fromCommandLine.candidates.find((candidate) => candidate.name === name)!
+        await window.locator('[data-testid=rung]', { hasText: name }).getByText(statistic(T)).first().waitFor()
       }
+      const marked = window.locator('li', { has: window.getByTestId('stand-here') }).getByTestId('rung')
+      expect(await marked.getAttribute('data-name')).toBe(ladder.standHere)
     })
 
-    test('fits the sample study to the same numbers', async () => {
+    test('has the very same numbers as the command line', async () => {
       const window = await app.firstWindow()
-      const answer = await window.evaluate(async () => {
-        const { rungwise } = globalThis as unknown as Page
-        await rungwise.call('openSample', null)
-        return rungwise.call('fitCandidates', { names: null })
-      })
-      expect(accepted(answer).result).toEqual(fromCommandLine)
+      const ask = () => window.evaluate(() => (globalThis as unknown as Page).rungwise.call('currentStudy', null))
+      await expect.poll(async () => accepted(await ask())?.result.candidates.length).toBe(fromCommandLine.candidates.length)
+      expect(accepted(await ask())?.result).toEqual(fromCommandLine)
     })
 
     test('is sandboxed and isolated, and has no Node and nothing of Electron', async () => {

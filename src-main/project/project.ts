@@ -80,15 +80,18 @@ export function createProjectFile(path: string, clock: Clock): Project {
  * Opens a project file and checks it: the data against their digest (a mismatch refuses the file), the trail against
  * itself (a break is told by `trailBreak`, the study still opens).
  *
- * @throws InputError for a file that is missing, not ours, of a newer version, damaged or locked; it is left untouched.
+ * @param judge looks at what the file holds (a copy of it) and throws to refuse it
+ * @throws InputError for a file that is missing, not ours, of a newer version, damaged or locked. A refused file is
+ *   left untouched, whoever refused it.
  */
-export function openProjectFile(path: string, clock: Clock): Project {
+export function openProjectFile(path: string, clock: Clock, judge: (project: Project) => void = () => {}): Project {
   const file = resolve(path)
-  return new Project(
-    openFile(file, (copy) => new Project(copy, file, clock).verifyContent()),
-    file,
-    clock
-  )
+  const check = (copy: Database.Database) => {
+    const project = new Project(copy, file, clock)
+    project.verifyContent()
+    judge(project)
+  }
+  return new Project(openFile(file, check), file, clock)
 }
 
 export class Project {

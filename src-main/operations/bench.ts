@@ -1,0 +1,101 @@
+/**
+ * What the operations work on: the open project and the running work of one workbench.
+ */
+import type { Clock, Project } from '../project/project.ts'
+import { InputError } from '../study/input-error.ts'
+import type { Crew } from '../workers/jobs.ts'
+import type { StudyView, WorkEvent } from './contract.ts'
+import { studyView } from './study-view.ts'
+
+/** Reads a file the user named. @throws InputError when it cannot be read */
+export type ReadFile = (path: string) => Uint8Array | Promise<Uint8Array>
+
+export interface BenchParts {
+  crew: Crew
+  clock: Clock
+  /** The plan that `openSample` opens. */
+  samplePlanPath: string
+  readFile: ReadFile
+  version: string
+}
+
+/** Owns the open project: whoever replaces it, closes the one before. */
+export class Bench {
+  readonly parts: BenchParts
+  readonly #listeners = new Set<(event: WorkEvent) => void>()
+  #project: Project | null = null
+  #running: AbortController | null = null
+
+  constructor(parts: BenchParts) {
+    this.parts = parts
+  }
+
+  get project(): Project | null {
+    return this.#project
+  }
+
+  /** @throws InputError when no study is open */
+  requireProject(): Project {
+    if (this.#project === null)
+      throw new InputError('no study is open', { remedy: 'Open a plan or a project, or start a study on a data file.' })
+    return this.#project
+  }
+
+  /** Makes `project` the open one. @throws InputError while fits are running */
+  async replace(project: Project): Promise<StudyView> {
+    let view: StudyView
+    try {
+      this.requireRest()
+      view = await studyView(project, this.parts.crew, this.parts.version)
+      this.requireRest()
+    } catch (error) {
+      project.close()
+      throw error
+    }
+    this.#project?.close()
+    this.#project = project
+    return view
+  }
+
+  view(): Promise<StudyView> {
+    return studyView(this.requireProject(), this.parts.crew, this.parts.version)
+  }
+
+  /** @throws InputError while fits are running */
+  requireRest(): void {
+    if (this.#running !== null)
+      throw new InputError('candidates are being fitted', { remedy: 'Wait until they are done, or stop them first.' })
+  }
+
+  /** Runs one stretch of work that `stopWork` can abort. @throws InputError while another is running */
+  async work<T>(task: (signal: AbortSignal) => Promise<T>): Promise<T> {
+    this.requireRest()
+    const running = new AbortController()
+    this.#running = running
+    try {
+      return await task(running.signal)
+    } finally {
+      this.#running = null
+    }
+  }
+
+  stopWork(): void {
+    this.#running?.abort()
+  }
+
+  tell(event: WorkEvent): void {
+    for (const listener of this.#listeners) listener(event)
+  }
+
+  onWork(listener: (event: WorkEvent) => void): () => void {
+    this.#listeners.add(listener)
+    return () => this.#listeners.delete(listener)
+  }
+
+  async close(): Promise<void> {
+    this.stopWork()
+    await this.parts.crew.close()
+    this.#project?.close()
+    this.#project = null
+  }
+}

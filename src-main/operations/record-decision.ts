@@ -1,0 +1,22 @@
+/**
+ * What the user concludes: where on a ladder to stand, and why. It may differ from what the rules say.
+ */
+
+import { InputError } from '../study/input-error.ts'
+import { ladderRungs } from '../study/ladders.ts'
+import type { Bench } from './bench.ts'
+import type { Operations, StudyView } from './contract.ts'
+
+export async function recordDecision(bench: Bench, decision: Operations['recordDecision']['input']): Promise<StudyView> {
+  const project = bench.requireProject()
+  const plan = project.plan()
+  const ladder = plan.ladders.find(({ name }) => name === decision.ladder)
+  if (ladder === undefined) throw new InputError(`there is no ladder "${decision.ladder}"`, { where: 'ladder' })
+  const rungs = ladderRungs(ladder, plan.candidates)
+  if (!rungs.includes(decision.rung)) {
+    const remedy = `Its rungs are ${rungs.map((rung) => `"${rung}"`).join(', ')}.`
+    throw new InputError(`the ladder "${ladder.name}" has no rung "${decision.rung}"`, { where: 'rung', remedy })
+  }
+  project.recordDecision(decision)
+  return bench.view()
+}

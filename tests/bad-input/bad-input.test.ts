@@ -1,6 +1,8 @@
 /**
  * Walks the table of broken input through reading the plan and loading its data.
  */
+import { readFileSync } from 'node:fs'
+import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import { readDelimited } from '../../src-main/importing/delimited.ts'
 import { loadData } from '../../src-main/importing/load-data.ts'
@@ -61,4 +63,52 @@ describe('bytes that are no text in UTF-8 are refused:', () => {
       message: expect.stringContaining(message)
     })
   })
+})
+
+describe('whatever is done to a plan, it is read or refused with a message', () => {
+  const text = readFileSync(new URL('../../fixtures/sample/plan.yaml', import.meta.url), 'utf8')
+  const lines = text.split('\n')
+  const place = fc.nat(lines.length - 1)
+
+  it.each([
+    {
+      damage: 'two lines change places',
+      damaged: fc.tuple(place, place).map(([i, j]) => lines.with(i, lines[j]!).with(j, lines[i]!).join('\n'))
+    },
+    { damage: 'a line is lost', damaged: place.map((i) => lines.toSpliced(i, 1).join('\n')) },
+    { damage: 'a line stands twice', damaged: place.map((i) => lines.toSpliced(i, 0, lines[i]!).join('\n')) },
+    {
+      damage: 'a line moves in or out',
+      damaged: fc.tuple(place, fc.nat(6)).map(([i, by]) => lines.with(i, ' '.repeat(by) + lines[i]!.trimStart()).join('\n'))
+    },
+    { damage: 'the end is lost', damaged: fc.nat(text.length).map((end) => text.slice(0, end)) },
+    {
+      damage: 'signs are put in',
+      damaged: fc
+        .tuple(fc.nat(text.length), fc.string({ maxLength: 3, unit: fc.constantFrom(...':-[]{},#&*!|>\'"%@\t\n 1a\u0000\uFEFF') }))
+        .map(([at, signs]) => text.slice(0, at) + signs + text.slice(at))
+    }
+  ])('when $damage', ({ damaged }) => {
+    fc.assert(
+      fc.property(damaged, (plan) => {
+        const error = refusal(() => parsePlan(plan, 'plan.yaml'))
+        expect(error === null || error instanceof InputError).toBe(true)
+      }),
+      { numRuns: 150, seed: 11 }
+    )
+  })
+})
+
+it('any bytes at all are read as a table or refused with a message', () => {
+  const options = { fileName: 'a.csv', indicators: ['a'], group: null, missingCodes: [''] }
+  const scraps = fc
+    .array(fc.constantFrom('a', ',', '\n', '"', '1', '2.5', ';', '\t', '\r', 'x', 'é', ' '), { maxLength: 30 })
+    .map((parts) => `a${parts.join('')}`)
+  fc.assert(
+    fc.property(fc.oneof(fc.uint8Array({ maxLength: 40 }), scraps), (input) => {
+      const error = refusal(() => readDelimited(input, options))
+      expect(error === null || error instanceof InputError).toBe(true)
+    }),
+    { numRuns: 500, seed: 12 }
+  )
 })

@@ -1,0 +1,335 @@
+/** Broken plans: the text, the data it names, candidates, changes, ladders, rules and estimation. */
+import { type BadInput, CANDIDATES, GOOD, GOOD_PLAN, HEAD, replaced } from './sound.ts'
+
+/** A case whose plan is broken. */
+const plan = (name: string, text: string, message: string): BadInput => ({ name, files: GOOD, plan: text, message })
+/** A case with one thing added to the good plan. */
+const added = (name: string, text: string, message: string): BadInput => plan(name, GOOD_PLAN + text, message)
+
+const asText: BadInput[] = [
+  plan('an empty plan', '', 'line 1, column 1: The plan is empty.'),
+  plan('a plan of comments only', '# nothing yet\n', 'The plan is empty.'),
+  plan(
+    'a plan that is a list',
+    '- study: Broken\n',
+    'line 1, column 1: The plan must be a mapping ("key: value"), but a list stands here.'
+  ),
+  plan('a plan that is a word', 'study', 'The plan must be a mapping ("key: value"), but "study" stands here.'),
+  plan(
+    'a bracket that is not closed',
+    replaced('[a, b, c, d]', '[a, b, c, d'),
+    'line 5, column 3: This is not one document of valid YAML:'
+  ),
+  plan('a tab as indentation', replaced('  file: a.csv', '\tfile: a.csv'), 'Tabs are not allowed as indentation'),
+  plan(
+    'two documents',
+    `${GOOD_PLAN}---\nstudy: Another\n`,
+    'This is not one document of valid YAML: a second document starts here.'
+  ),
+  plan('an alias without an anchor', replaced('indicators: [a, b, c, d]', 'indicators: *all'), '"*all" stands for nothing'),
+  plan(
+    'a mistyped key',
+    replaced('study:', 'studdy:'),
+    'line 1, column 1: Unknown key "studdy" in the plan. The nearest known key is "study"'
+  ),
+  plan(
+    'a key that stands twice',
+    `${GOOD_PLAN}study: Again\n`,
+    'line 11, column 1: "study" stands twice in the plan, first in line 1.'
+  ),
+  plan('no study', replaced('study: Broken\n', ''), 'The plan has no "study".'),
+  plan('a study without a name', replaced('study: Broken', 'study:'), 'line 1, column 7: The study is empty.'),
+  plan('no data', `study: Broken\n${CANDIDATES}`, 'The plan has no "data".'),
+  plan('no candidates', HEAD, 'The plan has no "candidates".')
+]
+
+const inData: BadInput[] = [
+  plan(
+    'an unknown key in the data',
+    replaced('  group: site', '  grup: site'),
+    'line 5, column 3: Unknown key "grup" in the data. The nearest known key is "group"'
+  ),
+  plan('neither file nor summary', replaced('  file: a.csv\n', ''), 'The data name neither a file nor a summary.'),
+  plan('file and summary at once', replaced('  group: site', '  summary: []'), 'The data name a file and a summary.'),
+  plan('a divisor beside a file', replaced('  group: site', '  divisor: n'), '"divisor" does not go with "file".'),
+  plan('no indicators', replaced('[a, b, c, d]', '[]'), 'There are no indicators.'),
+  plan(
+    'indicators that are no list',
+    replaced('[a, b, c, d]', 'a, b, c, d'),
+    'line 4, column 15: The indicators must be a list, but "a, b, c, d" stands here.'
+  ),
+  plan(
+    'an indicator listed twice',
+    replaced('[a, b, c, d]', '[a, b, c, a]'),
+    'line 4, column 25: The indicator "a" is listed twice.'
+  ),
+  plan(
+    'an indicator that is a mapping',
+    replaced('[a, b, c, d]', '[a, b, c, { d: 1 }]'),
+    'An indicator must be a name, but a mapping stands here.'
+  ),
+  plan(
+    'an indicator that is the grouping',
+    replaced('group: site', 'group: a'),
+    'line 5, column 10: "a" is an indicator and the grouping.'
+  ),
+  plan(
+    'missing codes that are no list',
+    replaced('group: site', 'missing codes: NA'),
+    'The missing codes must be a list, but "NA" stands here.'
+  )
+]
+
+const inCandidates: BadInput[] = [
+  plan(
+    'a candidate that stands twice',
+    `${GOOD_PLAN}  Two:\n    from: Two\n`,
+    'line 11, column 3: "Two" stands twice in the candidates, first in line 7.'
+  ),
+  plan('a candidate with nothing in it', `${GOOD_PLAN}  Empty: {}\n`, '"Empty" has neither factors nor a parent.'),
+  plan(
+    'an unknown key in a candidate',
+    `${GOOD_PLAN}  Bad:\n    form: Two\n`,
+    'line 12, column 5: Unknown key "form" in "Bad". The nearest known key is "from"'
+  ),
+  added(
+    'an unknown parent',
+    '  Bad: { from: Twoo }\n',
+    'line 11, column 16: "Bad" is derived from "Twoo", which is not a candidate. Did you mean "Two"?'
+  ),
+  added('a candidate derived from itself', '  Bad: { from: Bad }\n', 'The derivation runs in a circle: "Bad" from "Bad".'),
+  added(
+    'derivations in a circle',
+    '  X: { from: Y }\n  Y: { from: Z }\n  Z: { from: X }\n',
+    'The derivation runs in a circle: "X" from "Y" from "Z" from "X".'
+  ),
+  added(
+    'a parent and factors at once',
+    '  Bad: { from: Two, factors: { F: [a] } }\n',
+    '"Bad" is derived from "Two", so it cannot list factors of its own.'
+  ),
+  plan(
+    'no factor at all',
+    replaced('    factors:\n      F: [a, b]\n      G: [c, d]\n', '    factors: {}\n'),
+    'There are no factors.'
+  ),
+  plan('a factor that measures nothing', replaced('G: [c, d]', 'G: []'), 'The factor "G" measures nothing.'),
+  plan(
+    'a factor that is no list',
+    replaced('G: [c, d]', 'G: c'),
+    'line 10, column 10: The indicators of "G" must be a list, but "c" stands here.'
+  ),
+  plan(
+    'a factor of an unknown indicator',
+    replaced('G: [c, d]', 'G: [c, e]'),
+    'line 10, column 14: The factor "G" measures "e", which is neither an indicator nor a factor.'
+  ),
+  plan('a factor called like an indicator', replaced('G: [c, d]', 'd: [c, d]'), '"d" is an indicator and a factor.'),
+  plan('a factor that measures itself', replaced('G: [c, d]', 'G: [c, G]'), 'The factor "G" measures itself.'),
+  plan('an indicator twice in a factor', replaced('G: [c, d]', 'G: [c, d, c]'), 'line 10, column 17: "c" stands twice under "G".'),
+  plan(
+    'factors in a circle',
+    replaced('G: [c, d]', 'G: [c, d, H]\n      H: [F, K]\n      K: [G]'),
+    'Factors measure each other in a circle: "G" measures "H" measures "K" measures "G".'
+  ),
+  plan(
+    'a mistyped scaling',
+    `${GOOD_PLAN}    scaling: first loadings\n`,
+    'line 11, column 14: The scaling cannot be "first loadings". Did you mean "first loading"?'
+  ),
+  added('factor covariances neither free nor zero', '    factor covariances: none\n', 'The factor covariances cannot be "none".'),
+  added(
+    'an unknown set held equal',
+    '    across: site\n    equal across groups: [loading]\n',
+    'What is equal across groups cannot be "loading". Did you mean "loadings"?'
+  ),
+  added(
+    'a set held equal that is no list',
+    '    across: site\n    equal across groups: loadings\n',
+    'What is equal across groups must be a list'
+  ),
+  added('a set held equal twice', '    across: site\n    equal across groups: [loadings, loadings]\n', '"loadings" stands twice.'),
+  added('something held equal without groups', '    equal across groups: [loadings]\n', '"Two" is not across groups.'),
+  added(
+    "a grouping that is not the data's",
+    '    across: clinic\n',
+    'line 11, column 13: "clinic" is not the grouping of the data. The grouping is "site".'
+  ),
+  plan(
+    'a grouping where there is none',
+    replaced('  group: site\n', '', `${GOOD_PLAN}    across: site\n`),
+    'There are no groups in the data to go across "site".'
+  ),
+  added(
+    'an exception without an equality',
+    '    across: site\n    except: [{ loading: [b, F] }]\n',
+    'holds nothing equal across groups, so nothing can be excepted.'
+  ),
+  added(
+    'an exception from what is not held equal',
+    '    across: site\n    equal across groups: [loadings]\n    except: [{ intercept: b }]\n',
+    'The intercept is excepted, but intercepts are not held equal across groups.'
+  ),
+  added(
+    'an exception in an unknown group',
+    '    across: site\n    equal across groups: [loadings]\n    except: [{ loading: [b, F], group: nroth }]\n',
+    'There is no group "nroth" in the data. Did you mean "north"?'
+  )
+]
+
+const change = (text: string): string => `  Bad:\n    from: Two\n    change:\n      - ${text}\n`
+
+const inChanges: BadInput[] = [
+  added('a change that says nothing', change('{ at: 0 }'), 'line 14, column 9: This change says neither free, fix nor equal.'),
+  added(
+    'a mistyped change',
+    change('fre: { loading: [a, G] }'),
+    'line 14, column 9: Unknown key "fre" in a change. The nearest known key is "free"'
+  ),
+  added(
+    'two changes in one',
+    change('{ free: { loading: [a, G] }, fix: { loading: [b, G] } }'),
+    'One change cannot free and fix at once.'
+  ),
+  added('a fixed cell without its value', change('fix: { loading: [a, G] }'), 'A fixed cell needs its value.'),
+  added(
+    'a value that is no number',
+    change('{ fix: { loading: [a, G] }, at: one }'),
+    'The value of a fixed cell must be a number, but "one" stands here.'
+  ),
+  added('a value with a decimal comma', change('{ fix: { loading: [a, G] }, at: "0,5" }'), 'Write decimals with a point.'),
+  added(
+    'a value beyond all numbers',
+    change('{ fix: { loading: [a, G] }, at: .inf }'),
+    'The value of a fixed cell must be a number, but ".inf" stands here.'
+  ),
+  added('a value for a free cell', change('{ free: { loading: [a, G] }, at: 1 }'), '"at" goes with "fix", not with "free".'),
+  added(
+    'a variance fixed below zero',
+    change('{ fix: { residual variance: a }, at: -1 }'),
+    'A residual variance cannot be fixed at -1: a variance is never negative.'
+  ),
+  added(
+    'an unknown part of the model',
+    change('free: { residual covarance: [a, c] }'),
+    'Unknown key "residual covarance" in a cell. The nearest known key is "residual covariance"'
+  ),
+  added(
+    'a cell of two parts',
+    change('free: { loading: [a, G], intercept: a }'),
+    'A cell names 2 parts of the model (loading, intercept).'
+  ),
+  added('a loading with one name', change('free: { loading: [a] }'), 'A loading takes two names, but 1 stand here.'),
+  added(
+    'a loading with a bare name',
+    change('free: { loading: a }'),
+    'The names of a loading must be a list, but "a" stands here.'
+  ),
+  added(
+    'a residual variance with two names',
+    change('free: { residual variance: [a, b] }'),
+    'A residual variance takes one name, but 2 stand here.'
+  ),
+  added(
+    'a loading the wrong way round',
+    change('free: { loading: [G, a] }'),
+    '"G" is a factor, but the loading wants an indicator there. A loading takes [indicator, factor].'
+  ),
+  added(
+    'a loading between factors',
+    change('free: { loading: [F, G] }'),
+    'What a factor measures of another is a "factor regression: [F, G]".'
+  ),
+  added(
+    'a cell of an unknown indicator',
+    change('free: { residual covariance: [a, e] }'),
+    'line 14, column 9: There is no indicator "e".'
+  ),
+  added('a cell of an unknown factor', change('free: { factor covariance: [F, H] }'), 'There is no factor "H".'),
+  added(
+    'a covariance of one name with itself',
+    change('free: { residual covariance: [a, a] }'),
+    'A residual covariance joins two different names, not "a" with itself. Write "residual variance: a".'
+  ),
+  added('an equality of one cell', change('equal: { residual variance: [a] }'), 'An equality needs at least two cells.'),
+  added(
+    'an equality of a cell with itself',
+    change('equal: { residual covariance: [[a, c], [c, a]] }'),
+    'stands twice in one equality.'
+  ),
+  added(
+    'an equality of bare names',
+    change('equal: { loading: [a, b] }'),
+    'The names of a loading must be a list, but "a" stands here.'
+  ),
+  added(
+    'a change in one group of a candidate that has none',
+    change('{ free: { loading: [a, G] }, group: north }'),
+    'The group "north" is named, but this candidate is not across groups.'
+  )
+]
+
+const inTheRest: BadInput[] = [
+  added(
+    'an unknown candidate on a ladder',
+    'ladders:\n  Up: [Two, One]\n',
+    'line 12, column 13: The ladder "Up" names "One", which is not a candidate.'
+  ),
+  added('a candidate twice on a ladder', 'ladders:\n  Up: [Two, Two]\n', '"Two" stands twice on the ladder "Up".'),
+  added('an empty ladder', 'ladders:\n  Up: []\n', 'The ladder "Up" has no rung.'),
+  added('a ladder that is a word', 'ladders:\n  Up: Two\n', 'The ladder "Up" must list candidates, or say "invariance of:".'),
+  added(
+    'an invariance ladder of an unknown candidate',
+    'ladders:\n  Up: { invariance of: To, across: site, through: strict }\n',
+    'The ladder "Up" names "To", which is not a candidate. Did you mean "Two"?'
+  ),
+  added(
+    'an invariance ladder through an unknown step',
+    'ladders:\n  Up: { invariance of: Two, across: site, through: scaler }\n',
+    'The highest step cannot be "scaler". Did you mean "scalar"?'
+  ),
+  added(
+    'an invariance ladder without its grouping',
+    'ladders:\n  Up: { invariance of: Two, through: strict }\n',
+    'The ladder "Up" has no "across".'
+  ),
+  added(
+    'an invariance ladder across another column',
+    'ladders:\n  Up: { invariance of: Two, across: sex, through: strict }\n',
+    '"sex" is not the grouping of the data.'
+  ),
+  added('alpha of five', 'rules: { alpha: 5 }\n', 'line 11, column 17: alpha must lie between 0 and 1, not at 5.'),
+  added('alpha of zero', 'rules: { alpha: 0 }\n', 'alpha must lie between 0 and 1, not at 0.'),
+  added('alpha as text', 'rules: { alpha: "0.05" }\n', 'alpha must be a number, but "0.05" stands here.'),
+  added('an unknown adjustment', 'rules: { adjust: hollm }\n', 'The adjustment cannot be "hollm". Did you mean "holm"?'),
+  added(
+    'a threshold with the wrong sign',
+    'rules: { change in fit: { cfi: 0.01 } }\n',
+    'The threshold of cfi is the lowest change that still holds: zero or negative, not 0.01. Write -0.01.'
+  ),
+  added('a decision by thresholds that are not there', 'rules: { decide by: both }\n', '"decide by: both" needs thresholds.'),
+  added('an unknown rule', 'rules: { alfa: 0.05 }\n', 'Unknown key "alfa" in the rules. The nearest known key is "alpha"'),
+  added('an unknown method', 'estimation: { method: least squares }\n', 'The method cannot be "least squares".'),
+  added(
+    'the mean-scaled statistic',
+    'estimation: { statistic: mean-scaled }\n',
+    '"statistic: mean-scaled" is not available yet in this version.'
+  ),
+  added(
+    'full information',
+    'estimation: { missing: full information }\n',
+    'line 11, column 24: "missing: full information" is not available yet in this version.'
+  ),
+  added(
+    'robust standard errors',
+    'estimation: { standard errors: robust }\n',
+    '"standard errors: robust" is not available yet in this version.'
+  ),
+  added(
+    'the wishart convention with raw data',
+    'estimation: { convention: wishart }\n',
+    'The wishart convention does not go with a file of raw data.'
+  )
+]
+
+export const planCases: BadInput[] = [...asText, ...inData, ...inCandidates, ...inChanges, ...inTheRest]

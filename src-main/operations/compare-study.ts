@@ -1,10 +1,22 @@
 /**
- * Fits the candidates of a study and lays them out as ladders: the main job, as one call (its walk is in DEVELOPERS.md).
+ * Fits the candidates of a study and lays them out as ladders: the main job, as one call. The walk, top to bottom:
+ *
+ *     family -> cells and moments of each candidate -> fits (by the crew) -> relations of adjacent rungs -> result
  */
-import type { DataSet, Origin, Plan } from '../study/study.ts'
-import type { StudyResult } from '../study/result.ts'
+import { createHash } from 'node:crypto'
+import { informationWeights } from '../statistics/comparison/difference-test.ts'
+import type { ModelCells } from '../statistics/model/cells.ts'
+import type { SampleMoments } from '../statistics/moments/sample-moments.ts'
+import { ladderRungs } from '../study/ladders.ts'
+import type { CandidateResult, LadderResult, StudyResult } from '../study/result.ts'
+import { addsWords, candidateSentence } from '../study/sentences.ts'
+import type { Candidate, DataSet, LadderPlan, Origin, Plan } from '../study/study.ts'
 import type { Crew, FitOutcome, RelationOutcome } from '../workers/jobs.ts'
+import { momentsSource } from './candidate-moments.ts'
 import type { WorkEvent } from './contract.ts'
+import { completeCases } from './data-summary.ts'
+import { cellsOf, familyOf } from './family.ts'
+import { ladderResult, type StepGround } from './ladder-result.ts'
 
 /** Fits and proofs already made, by digest; given and added to. A digest covers the model, the data, the settings and the program version. */
 export interface StudyMemory {
@@ -17,9 +29,10 @@ export interface CompareInput {
   data: DataSet
   /** By candidate name; a name left out is planned. */
   origins: ReadonlyMap<string, Origin>
-  /** Candidates to fit now; null for all. What is not fitted and not in `memory` stays a draft and out of the result. */
+  /** Candidates to fit now (with what ladders generate from them); null for all. What is neither fitted nor in `memory` is left out of the result. */
   names: string[] | null
   memory: StudyMemory
+  version: string
 }
 
 export interface CompareOptions {
@@ -27,6 +40,191 @@ export interface CompareOptions {
   signal?: AbortSignal
 }
 
-export async function compareStudy(_input: CompareInput, _crew: Crew, _options: CompareOptions = {}): Promise<StudyResult> {
-  throw new Error('being written')
+/** One candidate ready to be fitted. */
+interface Entry {
+  candidate: Candidate
+  origin: Origin
+  cells: ModelCells
+  moments: SampleMoments
+  digest: string
+}
+
+/** Throws InputError for a candidate that makes no model, and the signal's reason when it aborts; finished fits are in `memory` by then. */
+export async function compareStudy(input: CompareInput, crew: Crew, options: CompareOptions = {}): Promise<StudyResult> {
+  const family = familyOf(input.plan, input.origins)
+  const entries = entriesOf(input, family.candidates, family.origins)
+  await fitAll(
+    input,
+    entries.filter((entry) => isWanted(entry.candidate, input.names, family.generated)),
+    crew,
+    options
+  )
+  const results = candidateResults(entries, input.memory)
+  const ladders: LadderResult[] = []
+  for (const ladder of input.plan.ladders)
+    ladders.push(await climb(ladder, input, entries, results, family.candidates, crew, options))
+  return {
+    study: input.plan.study,
+    program: { name: 'rungwise', version: input.version },
+    data: {
+      digest: input.data.digest,
+      indicators: input.data.indicators,
+      groups: completeCases(input.data),
+      cautions: input.data.cautions
+    },
+    candidates: results,
+    ladders
+  }
+}
+
+function isWanted(candidate: Candidate, names: string[] | null, generated: ReadonlySet<string>): boolean {
+  if (names === null || names.includes(candidate.name)) return true
+  return generated.has(candidate.name) && candidate.from !== null && names.includes(candidate.from)
+}
+
+function entriesOf(input: CompareInput, candidates: Candidate[], origins: ReadonlyMap<string, Origin>): Entry[] {
+  const { plan, data, version } = input
+  const moments = momentsSource(data, plan.estimation.convention)
+  return candidates.map((candidate) => {
+    const cells = cellsOf(candidate.name, candidates, plan, data)
+    const byGroup = cells.groups.some((g) => g.name !== null)
+    return {
+      candidate,
+      origin: origins.get(candidate.name) ?? 'planned',
+      cells,
+      moments: moments(byGroup, cells.indicators),
+      digest: digestOf({ cells, data: data.digest, estimation: plan.estimation, version })
+    }
+  })
+}
+
+/** SHA-256 over the JSON text; keys are written in the order the code makes them, so equal content gives equal text. */
+function digestOf(content: object): string {
+  return `sha256:${createHash('sha256').update(JSON.stringify(content)).digest('hex')}`
+}
+
+async function fitAll(input: CompareInput, entries: Entry[], crew: Crew, { onWork, signal }: CompareOptions): Promise<void> {
+  const { memory, plan } = input
+  const open = new Map(entries.filter((e) => !memory.fits.has(e.digest)).map((e) => [e.digest, e]))
+  const total = open.size
+  let done = 0
+  const started = performance.now()
+  onWork?.({ kind: 'started', total })
+  const work = [...open.values()].map(async ({ candidate, cells, moments, digest }) => {
+    const job = {
+      kind: 'fit' as const,
+      candidate: candidate.name,
+      cells,
+      moments,
+      settings: { convention: plan.estimation.convention }
+    }
+    const outcome = await crew.fit(job, signal)
+    memory.fits.set(digest, outcome)
+    done++
+    const secondsLeft = (((performance.now() - started) / done) * (total - done)) / 1000
+    onWork?.({ kind: 'fitted', candidate: candidate.name, state: outcome.fit.state, done, total, secondsLeft })
+  })
+  const ends = await Promise.allSettled(work)
+  onWork?.({ kind: 'finished', cancelled: signal?.aborted ?? false })
+  signal?.throwIfAborted()
+  for (const end of ends) if (end.status === 'rejected') throw end.reason
+}
+
+function candidateResults(entries: Entry[], memory: StudyMemory): CandidateResult[] {
+  const fitted = entries.flatMap((entry) => {
+    const outcome = memory.fits.get(entry.digest)
+    return outcome === undefined ? [] : [{ entry, fit: outcome.fit }]
+  })
+  const results: CandidateResult[] = fitted.map(({ entry, fit }) => ({
+    name: entry.candidate.name,
+    origin: entry.origin,
+    from: entry.candidate.from,
+    sentence: candidateSentence(entry.candidate),
+    sameAs: entries.filter((other) => other !== entry && other.digest === entry.digest).map((other) => other.candidate.name),
+    aicWeight: null,
+    bicWeight: null,
+    ...fit
+  }))
+  weigh(
+    fitted.map(({ entry }) => entry),
+    results
+  )
+  return results
+}
+
+/** Akaike and BIC weights within each set of candidates fitted to the same moments; one content counts once under all its names. */
+function weigh(entries: Entry[], results: CandidateResult[]): void {
+  const sets = new Map<string, Map<string, CandidateResult[]>>()
+  entries.forEach((entry, i) => {
+    if (results[i]!.state !== 'fitted') return
+    const key = momentsKey(entry)
+    const set = sets.get(key) ?? new Map<string, CandidateResult[]>()
+    sets.set(key, set)
+    set.set(entry.digest, [...(set.get(entry.digest) ?? []), results[i]!])
+  })
+  for (const set of sets.values()) {
+    const models = [...set.values()]
+    const aic = informationWeights(models.map(([one]) => one!.aic!))
+    const bic = informationWeights(models.map(([one]) => one!.bic!))
+    models.forEach((names, k) => {
+      for (const result of names) Object.assign(result, { aicWeight: aic[k], bicWeight: bic[k] })
+    })
+  }
+}
+
+function momentsKey({ cells }: Entry): string {
+  return JSON.stringify([cells.indicators, cells.groups.map((g) => g.name)])
+}
+
+async function climb(
+  ladder: LadderPlan,
+  input: CompareInput,
+  entries: Entry[],
+  results: CandidateResult[],
+  family: Candidate[],
+  crew: Crew,
+  options: CompareOptions
+): Promise<LadderResult> {
+  const rungs = ladderRungs(ladder, input.plan.candidates)
+  const entry = (name: string) => entries.find((e) => e.candidate.name === name)!
+  const result = (name: string) => results.find((r) => r.name === name) ?? null
+  const grounds: StepGround[] = []
+  for (let i = 1; i < rungs.length; i++) {
+    const [from, to] = [rungs[i - 1]!, rungs[i]!]
+    const [lower, upper] = [result(from), result(to)]
+    const sameMoments = momentsKey(entry(from)) === momentsKey(entry(to))
+    const relation = sameMoments ? await relate(entry(from), entry(to), input, crew, options) : null
+    const constraints = lower !== null && upper !== null ? upper.df - lower.df : null
+    grounds.push({ from, to, lower, upper, adds: addsWords(from, to, family, constraints), sameMoments, relation })
+  }
+  return ladderResult(ladder.name, rungs, grounds, input.plan.rules)
+}
+
+/** The proved relation of two candidates with solutions; null when one has none. Remembered by both digests. */
+async function relate(
+  lower: Entry,
+  upper: Entry,
+  { memory }: CompareInput,
+  crew: Crew,
+  { signal }: CompareOptions
+): Promise<RelationOutcome | null> {
+  const general = memory.fits.get(lower.digest)
+  const restricted = memory.fits.get(upper.digest)
+  if (general?.gamma == null || restricted?.gamma == null) return null
+  const digest = digestOf({ general: lower.digest, restricted: upper.digest })
+  const known = memory.relations.get(digest)
+  if (known !== undefined) return known
+  const outcome = await crew.relation(
+    {
+      kind: 'relation',
+      general: lower.cells,
+      generalGamma: general.gamma,
+      restricted: upper.cells,
+      restrictedGamma: restricted.gamma,
+      sizes: lower.moments.groups.map((g) => g.n)
+    },
+    signal
+  )
+  memory.relations.set(digest, outcome)
+  return outcome
 }

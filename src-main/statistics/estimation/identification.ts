@@ -4,7 +4,7 @@
  */
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix'
 import type { Generator } from '../distributions/generator.ts'
-import { cholesky } from '../matrix/symmetric.ts'
+import { cholesky, envelope } from '../matrix/symmetric.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
 import { normalObjective } from './normal-likelihood.ts'
@@ -29,7 +29,9 @@ export function nullSpaceParameters(curvature: Float64Array, q: number): number[
     }
   }
   const factor = Float64Array.from(scaled)
-  if (cholesky(factor, q, factor) && smallestPivot(factor, q) > 1e-4) return flat
+  const first = new Int32Array(q)
+  envelope(factor, q, first)
+  if (cholesky(factor, q, factor, first) && smallestPivot(factor, q) > 1e-4) return flat
   const full = new Matrix(q, q)
   for (let i = 0; i < q; i++) {
     for (let j = 0; j <= i; j++) {
@@ -65,7 +67,8 @@ export function unidentifiedLabels(model: CompiledModel, moments: SampleMoments,
   let common: Set<number> | null = null
   for (let point = 0, tries = 0; point < 2 && tries < 40; tries++) {
     const gamma = genericPoint(model, start, generator)
-    if (Number.isNaN(objective.evaluate(gamma, gradient, curvature))) continue
+    if (Number.isNaN(objective.evaluate(gamma))) continue
+    objective.derive(gradient, curvature)
     point++
     const found = nullSpaceParameters(curvature, q)
     common = new Set(found.filter((k) => common === null || common.has(k)))

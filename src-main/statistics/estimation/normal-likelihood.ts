@@ -12,7 +12,7 @@
  * so the information costs O(1) a pair of cells and no derivative matrix is ever formed. The information matrix of
  * gamma is (N/2) times the second derivatives. Convention: N = sum n_g, or sum (n_g - 1) under Wishart.
  */
-import { cholesky, choleskyInverse, logDeterminant, mirrorLower, multiply } from '../matrix/symmetric.ts'
+import { cholesky, choleskyInverse, dotRows, logDeterminant, mirrorLower, multiply } from '../matrix/symmetric.ts'
 import type { CompiledGroup, CompiledModel } from '../model/compile.ts'
 import { type GroupState, groupState, impliedMoments } from '../model/implied-moments.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
@@ -25,13 +25,15 @@ export interface Objective {
   parameters: number
   /** N of every formula. */
   total: number
+  /** F at gamma, NaN where Sigma is not positive definite. */
+  evaluate(gamma: Float64Array): number
   /**
-   * F at gamma, NaN where Sigma is not positive definite.
+   * Derivatives at the gamma last evaluated (which must not have given NaN).
    *
-   * @param gradient dF/dgamma (q), written when given
-   * @param curvature expected d2F (q x q, lower triangle), written when given; not written when F is NaN
+   * @param gradient dF/dgamma (q), written
+   * @param curvature expected d2F (q x q, lower triangle), written when given
    */
-  evaluate(gamma: Float64Array, gradient?: Float64Array, curvature?: Float64Array): number
+  derive(gradient: Float64Array, curvature?: Float64Array): void
   /** The matrices of each group at the last gamma evaluated. */
   states: readonly GroupState[]
 }
@@ -58,21 +60,20 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
     parameters: model.parameters,
     total,
     states: groups.map((g) => g.state),
-    evaluate(gamma, gradient, curvature) {
+    evaluate(gamma) {
       let value = 0
       for (const work of groups) {
         value += work.weight * groupDiscrepancy(work, gamma, model.hasRegressions)
         if (Number.isNaN(value)) return Number.NaN
       }
-      if (gradient !== undefined) {
-        gradient.fill(0)
-        for (const work of groups) addGradient(work, gradient)
-      }
-      if (curvature !== undefined) {
-        curvature.fill(0)
-        for (const work of groups) addCurvature(work, curvature, model.parameters)
-      }
       return value
+    },
+    derive(gradient, curvature) {
+      gradient.fill(0)
+      for (const work of groups) addGradient(work, gradient)
+      if (curvature === undefined) return
+      curvature.fill(0)
+      for (const work of groups) addCurvature(work, curvature, model.parameters)
     }
   }
 }
@@ -94,6 +95,7 @@ interface GroupWork {
   wd: Float64Array
   omega: Float64Array
   wMean: Float64Array
+  first: Int32Array
   /** P x P: G, with W as its first p rows and columns. */
   gram: Float64Array
   columns: Float64Array
@@ -140,6 +142,7 @@ function groupWork(
     wd: array(p * p),
     omega: array(p * p),
     wMean: array(p),
+    first: new Int32Array(p),
     gram: array(size * size),
     columns: array(p * 2 * m),
     product: array(p * 2 * m),
@@ -187,7 +190,7 @@ function groupDiscrepancy(work: GroupWork, gamma: Float64Array, regressions: boo
   if (!impliedMoments(work.group, gamma, regressions, state)) return Number.NaN
   if (!cholesky(state.sigma, p, chol)) return Number.NaN
   const logDet = logDeterminant(chol, p)
-  choleskyInverse(chol, p, w)
+  choleskyInverse(chol, p, w, work.first)
   data.set(sample)
   if (sampleMean !== null) {
     for (let i = 0; i < p; i++) d[i] = sampleMean[i]! - state.mu[i]!
@@ -204,9 +207,7 @@ function addGradient(work: GroupWork, gradient: Float64Array): void {
   const { p, state, w, wd, omega, d, wMean, size, columns, product, u, v, c, s } = work
   for (let i = 0; i < p; i++) {
     for (let j = 0; j <= i; j++) {
-      let sum = w[i * p + j]!
-      for (let k = 0; k < p; k++) sum -= wd[i * p + k]! * w[j * p + k]!
-      omega[i * p + j] = sum
+      omega[i * p + j] = w[i * p + j]! - dotRows(wd, i * p, w, j * p, p)
     }
   }
   mirrorLower(omega, p)
@@ -266,7 +267,7 @@ function columnDot(x: Float64Array, columns: Float64Array, p: number, wide: numb
   return sum
 }
 
-/** Adds this group's expected second derivatives; addGradient must have run at the same gamma. */
+/** Adds this group's expected second derivatives; addGradient must have run before (it leaves [E, L] and the mean weights). */
 function addCurvature(work: GroupWork, curvature: Float64Array, q: number): void {
   fillGram(work)
   const { gram, size, u, v, c, s, meanWeight, plain, gamma, weight } = work

@@ -6,7 +6,7 @@
  * model, where scoring alone is only linearly convergent, still ends fast. A damped matrix (Levenberg 1944; Marquardt
  * 1963) takes over where the information is singular or a step does not descend.
  */
-import { cholesky, choleskySolve } from '../matrix/symmetric.ts'
+import { cholesky, choleskySolve, envelope } from '../matrix/symmetric.ts'
 import type { Objective } from './normal-likelihood.ts'
 
 export interface ScoringSettings {
@@ -47,15 +47,17 @@ export function minimise(objective: Objective, start: Float64Array, settings: Sc
     iterations: 0,
     largestGradient: Number.NaN
   }
-  point.value = objective.evaluate(point.gamma, point.gradient, point.curvature)
+  point.value = objective.evaluate(point.gamma)
   if (Number.isNaN(point.value)) return { ...point, stop: 'bad start' }
+  objective.derive(point.gradient, point.curvature)
   const search: Search = {
     objective,
     pairs: [],
     damping: 0,
     trial: new Float64Array(q),
     direction: new Float64Array(q),
-    factor: new Float64Array(q * q)
+    factor: new Float64Array(q * q),
+    first: new Int32Array(q)
   }
   for (; point.iterations < settings.iterations; point.iterations++) {
     point.largestGradient = scaledGradient(point.gradient, point.curvature)
@@ -79,6 +81,7 @@ interface Search {
   trial: Float64Array
   direction: Float64Array
   factor: Float64Array
+  first: Int32Array
 }
 
 /** max |g_k| / sqrt(h_kk): free of the indicators' units. */
@@ -97,11 +100,7 @@ function advance(search: Search, point: Minimum): boolean {
   for (let attempt = 0; attempt < 40; attempt++) {
     if (factorDamped(search, point.curvature)) {
       const slope = findDirection(search, point.gradient)
-      const length = slope < 0 ? lineSearch(search, point, slope) : 0
-      if (length > 0) {
-        accept(search, point, length)
-        return true
-      }
+      if (slope < 0 && lineSearch(search, point, slope)) return true
     }
     search.pairs = []
     search.damping = search.damping === 0 ? 1e-4 : search.damping * 5
@@ -118,12 +117,13 @@ function factorDamped(search: Search, curvature: Float64Array): boolean {
     const h = curvature[k * q + k]!
     search.factor[k * q + k] = h * (1 + search.damping) + (h > 0 ? 0 : search.damping)
   }
-  return cholesky(search.factor, q, search.factor)
+  envelope(search.factor, q, search.first)
+  return cholesky(search.factor, q, search.factor, search.first)
 }
 
 /** direction = -(corrected H)^-1 g; returns g' direction. */
 function findDirection(search: Search, gradient: Float64Array): number {
-  const { direction, pairs, factor } = search
+  const { direction, pairs, factor, first } = search
   const q = direction.length
   direction.set(gradient)
   const alphas: number[] = []
@@ -133,7 +133,7 @@ function findDirection(search: Search, gradient: Float64Array): number {
     alphas[i] = alpha
     for (let k = 0; k < q; k++) direction[k]! -= alpha * y[k]!
   }
-  choleskySolve(factor, q, direction)
+  choleskySolve(factor, q, direction, first)
   for (let i = 0; i < pairs.length; i++) {
     const { s, y, rho } = pairs[i]!
     const beta = alphas[i]! - rho * dot(y, direction)
@@ -143,22 +143,24 @@ function findDirection(search: Search, gradient: Float64Array): number {
   return dot(gradient, direction)
 }
 
-/** The longest of 1, 1/2, 1/4 ... that descends enough (Armijo); 0 when none does. Rounding in F is allowed for. */
-function lineSearch(search: Search, point: Minimum, slope: number): number {
+/** Takes the longest of 1, 1/2, 1/4 ... that descends enough (Armijo), rounding in F allowed for; false when none does. */
+function lineSearch(search: Search, point: Minimum, slope: number): boolean {
   const { trial, direction, objective } = search
-  const q = direction.length
   const noise = 1e-14 * (1 + Math.abs(point.value))
-  let length = 1
-  for (let i = 0; i < halvings; i++, length /= 2) {
-    for (let k = 0; k < q; k++) trial[k] = point.gamma[k]! + length * direction[k]!
+  for (let i = 0, length = 1; i < halvings; i++, length /= 2) {
+    for (let k = 0; k < trial.length; k++) trial[k] = point.gamma[k]! + length * direction[k]!
     const value = objective.evaluate(trial)
-    if (value <= point.value + 1e-4 * length * slope + noise) return length
+    if (value <= point.value + 1e-4 * length * slope + noise) {
+      accept(search, point, value)
+      if (length === 1) search.damping = search.damping < 1e-5 ? 0 : search.damping / 10
+      return true
+    }
   }
-  return 0
+  return false
 }
 
-/** Moves `point` to the trial point, remembers the pair and eases the damping after a full step. */
-function accept(search: Search, point: Minimum, length: number): void {
+/** Moves `point` to the trial point, where F was just evaluated, and remembers the pair. */
+function accept(search: Search, point: Minimum, value: number): void {
   const q = search.direction.length
   const s = new Float64Array(q)
   const y = new Float64Array(q)
@@ -167,14 +169,14 @@ function accept(search: Search, point: Minimum, length: number): void {
     y[k] = -point.gradient[k]!
   }
   point.gamma.set(search.trial)
-  point.value = search.objective.evaluate(point.gamma, point.gradient, point.curvature)
+  point.value = value
+  search.objective.derive(point.gradient, point.curvature)
   for (let k = 0; k < q; k++) y[k]! += point.gradient[k]!
   const curvature = dot(s, y)
   if (curvature > 1e-10 * Math.sqrt(dot(s, s) * dot(y, y))) {
     search.pairs.push({ s, y, rho: 1 / curvature })
     if (search.pairs.length > pairsKept) search.pairs.shift()
   }
-  if (length === 1) search.damping = search.damping < 1e-5 ? 0 : search.damping / 10
 }
 
 function dot(a: Float64Array, b: Float64Array): number {

@@ -10,7 +10,7 @@ import { nullSpaceParameters, unidentifiedLabels } from '../estimation/identific
 import { type Convention, effectiveSize, normalObjective, type Objective } from '../estimation/normal-likelihood.ts'
 import { type Minimum, minimise, ordinaryScoring } from '../estimation/scoring.ts'
 import { perturbedStart, startingValues } from '../estimation/starts.ts'
-import { cholesky, choleskyInverse, logDeterminant } from '../matrix/symmetric.ts'
+import { cholesky, choleskyInverse, envelope, logDeterminant } from '../matrix/symmetric.ts'
 import { cellWords, listed } from '../model/cell-words.ts'
 import type { CellPart, ModelCells } from '../model/cells.ts'
 import { type CompiledModel, compileModel, type MatrixName } from '../model/compile.ts'
@@ -30,8 +30,12 @@ export interface FitOutcome {
   gamma: number[] | null
 }
 
-/** Perturbed starts tried when the first does not settle the matter, and the seed they come from. */
-const furtherStarts = 12
+/**
+ * Perturbed starts tried when the first does not settle the matter, more when they disagree, and the seed they come from.
+ * In the hard case of fixtures/reference/01c about a quarter of such starts find the smallest minimum: 40 miss it once in 1e5.
+ */
+const furtherStarts = 8
+const startsAmongSeveralMinima = 40
 const startSeed = 20_260_101
 
 export function fitModel(cells: ModelCells, moments: SampleMoments, settings: FitSettings): FitOutcome {
@@ -112,12 +116,13 @@ function smallestMinimum(model: CompiledModel, moments: SampleMoments, objective
   const first = minimise(objective, feasible(model, objective, ordinary))
   if (settled(model, objective, first)) return { best: first, starts: 1, minima: 1 }
   const all = [first]
-  for (let i = 0; i < furtherStarts; i++) {
+  const ended = () => all.filter((minimum) => minimum.stop === 'converged')
+  const minima = () => distinct(ended().map((minimum) => minimum.value))
+  for (let i = 0; i < (minima() > 1 ? startsAmongSeveralMinima : furtherStarts); i++) {
     all.push(minimise(objective, feasible(model, objective, perturbedStart(model, ordinary, generator))))
   }
-  const ended = all.filter((minimum) => minimum.stop === 'converged')
-  const best = (ended.length > 0 ? ended : all).reduce((a, b) => (b.value < a.value || Number.isNaN(a.value) ? b : a))
-  return { best, starts: all.length, minima: distinct(ended.map((minimum) => minimum.value)) }
+  const best = (ended().length > 0 ? ended() : all).reduce((a, b) => (b.value < a.value || Number.isNaN(a.value) ? b : a))
+  return { best, starts: all.length, minima: minima() }
 }
 
 /** Proper, converged, and of a kind that is not known for local minima (crossed loadings, equal intercepts under heavy misfit). */
@@ -311,8 +316,10 @@ function estimateCovariance(minimum: Minimum, n: number): Float64Array | null {
   const q = minimum.gamma.length
   const information = minimum.curvature.map((h) => (n / 2) * h)
   const inverse = new Float64Array(q * q)
-  if (!cholesky(information, q, information)) return null
-  choleskyInverse(information, q, inverse)
+  const first = new Int32Array(q)
+  envelope(information, q, first)
+  if (!cholesky(information, q, information, first)) return null
+  choleskyInverse(information, q, inverse, first)
   return inverse
 }
 

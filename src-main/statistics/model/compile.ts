@@ -38,7 +38,7 @@ export interface CompiledModel {
   indicators: string[]
   factors: string[]
   groups: CompiledGroup[]
-  /** Labels of theta, in order of first appearance. */
+  /** Labels of theta: group by group those of that group alone, intercepts first; then the shared ones. */
   labels: string[]
   /** The label each gamma is named after. */
   gammaLabels: string[]
@@ -57,7 +57,11 @@ export function compileModel(model: ModelCells): CompiledModel {
   const meanStructure = model.groups[0]?.intercepts != null
   const theta = new Map<string, number>()
   const groups = model.groups.map((cells) => compileGroup(cells, p, model.factors.length, theta))
-  const labels = [...theta.keys()]
+  const labels = sharedLast(groups)
+  labels.forEach((label, at) => {
+    theta.set(label, at)
+  })
+  for (const group of groups) for (const cell of group.free) cell.theta = theta.get(cell.label)!
   const rows = reduce(labels, model.constraints)
   for (const group of groups) for (const cell of group.free) Object.assign(cell, rows.cells[cell.theta])
   const moments = groups.length * ((p * (p + 1)) / 2 + (meanStructure ? p : 0))
@@ -72,6 +76,22 @@ export function compileModel(model: ModelCells): CompiledModel {
     hasRegressions: groups.some((g) => g.beta.some((v) => v !== 0) || g.free.some((c) => c.matrix === 'beta')),
     df: moments - rows.gammaLabels.length
   }
+}
+
+/**
+ * Labels in the order that keeps the information sparse: parameters of different groups never meet, and a saturated mean
+ * structure does not meet the covariance structure, so each stands in a block of its own, with the shared ones last.
+ */
+function sharedLast(groups: readonly CompiledGroup[]): string[] {
+  const owner = new Map<string, number>()
+  groups.forEach((group, g) => {
+    for (const { label } of group.free) owner.set(label, (owner.get(label) ?? g) === g ? g : groups.length)
+  })
+  const rank = new Map<string, number>()
+  for (const { free } of groups) {
+    for (const { label, matrix } of free) if (!rank.has(label)) rank.set(label, 2 * owner.get(label)! + (matrix === 'nu' ? 0 : 1))
+  }
+  return [...rank.keys()].sort((a, b) => rank.get(a)! - rank.get(b)!)
 }
 
 /** Where a matrix's cells stand: its name, its source and whether only the lower triangle counts. */

@@ -1,0 +1,50 @@
+/**
+ * The test of one step, and what goes with a family of them (methods: section 6).
+ */
+import { chiSquareQuantile, chiSquareUpper } from '../distributions/chi-square.ts'
+
+export interface DifferenceTest {
+  T: number
+  df: number
+  p: number
+}
+
+/** Normal theory: T0 - T1 on df0 - df1 degrees of freedom, of a restricted model (0) against a general one (1) it is nested in. */
+export function normalDifference(restricted: { T: number; df: number }, general: { T: number; df: number }): DifferenceTest {
+  // Equal fits differ by rounding; a negative difference of that size is zero.
+  const T = Math.max(0, restricted.T - general.T)
+  const df = restricted.df - general.df
+  return { T, df, p: chiSquareUpper(T, df) }
+}
+
+/** Adjusted p-values in the order given (Holm 1979): step-down, made monotone, never above 1. */
+export function holm(pValues: readonly number[]): number[] {
+  const order = pValues.map((_, i) => i).sort((a, b) => pValues[a]! - pValues[b]!)
+  const adjusted = new Array<number>(pValues.length)
+  let running = 0
+  order.forEach((i, rank) => {
+    running = Math.min(1, Math.max(running, pValues[i]! * (pValues.length - rank)))
+    adjusted[i] = running
+  })
+  return adjusted
+}
+
+/**
+ * The value of the statistic at which this very step would stop holding: the chi-square quantile at the level that the
+ * adjustment left to it, alpha p / adjusted p. Thus the statistic exceeds it exactly when the adjusted p is below alpha.
+ */
+export function criticalValue(test: DifferenceTest, adjustedP: number, alpha: number): number {
+  const share = adjustedP > 0 ? test.p / adjustedP : 1
+  return chiSquareQuantile(alpha * share, test.df)
+}
+
+/**
+ * Weights of evidence from an information criterion: exp(-Delta/2), scaled to sum to one
+ * (Burnham & Anderson 2002; Wagenmakers & Farrell 2004).
+ */
+export function informationWeights(criteria: readonly number[]): number[] {
+  const least = Math.min(...criteria)
+  const raw = criteria.map((value) => Math.exp(-(value - least) / 2))
+  const sum = raw.reduce((a, b) => a + b, 0)
+  return raw.map((value) => value / sum)
+}

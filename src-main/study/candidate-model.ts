@@ -1,0 +1,476 @@
+/**
+ * A Candidate, as the user states it, becomes the model's cells.
+ *
+ * Derivation is resolved first (parent's content, then one's own changes in order). Then, group by group: the pattern,
+ * the scaling, what is held equal across groups with every identification shift that follows (factor variances and
+ * means freed where equal loadings or intercepts make them estimable; a reference indicator moved off a released
+ * loading), and last the changes.
+ */
+import { cellWords } from '../statistics/model/cell-words.ts'
+import type { Cell, GroupCells, LinearConstraint, ModelCells } from '../statistics/model/cells.ts'
+import { InputError } from './input-error.ts'
+import { didYouMean } from './nearest.ts'
+import {
+  type Candidate,
+  type CellName,
+  type CellPart,
+  type Change,
+  type EqualSet,
+  type Factor,
+  namesOfPart,
+  type Release,
+  type Scaling
+} from './study.ts'
+
+/** A candidate with nothing left to its parents. */
+export interface ResolvedCandidate {
+  name: string
+  factors: Factor[]
+  scaling: Scaling
+  factorCovariances: 'free' | 'zero'
+  across: string | null
+  equal: EqualSet[]
+  except: Release[]
+  changes: Change[]
+}
+
+/** What of the data a model needs to know. */
+export interface ModelFrame {
+  indicators: readonly string[]
+  grouping: string | null
+  groups: readonly (string | null)[]
+  /** Whether means are known, so that a mean structure is modelled. */
+  means: boolean
+}
+
+/** Follows `from` to the root. Throws InputError on an unknown name, a circle, or a root without factors. */
+export function resolveCandidate(name: string, family: readonly Candidate[]): ResolvedCandidate {
+  const byName = new Map(family.map((c) => [c.name, c]))
+  const chain: Candidate[] = []
+  for (let next: string | null = name; next !== null; ) {
+    const candidate = byName.get(next)
+    if (candidate === undefined) {
+      const where = chain.length === 0 ? null : `candidate "${chain[0]!.name}"`
+      throw new InputError(`there is no candidate "${next}"`, { where, remedy: didYouMean(next, [...byName.keys()], 'candidates') })
+    }
+    if (chain.includes(candidate)) throw new InputError('it is derived from itself', { where: `candidate "${name}"` })
+    chain.unshift(candidate)
+    next = candidate.from
+  }
+  return chain.reduce((parent: ResolvedCandidate | null, own) => derive(parent, own), null)!
+}
+
+function derive(parent: ResolvedCandidate | null, own: Candidate): ResolvedCandidate {
+  const factors = own.factors ?? parent?.factors
+  if (factors === undefined) {
+    throw new InputError('it has no factors', {
+      where: `candidate "${own.name}"`,
+      remedy: 'Give factors, or from: another candidate.'
+    })
+  }
+  return {
+    name: own.name,
+    factors,
+    scaling: own.scaling ?? parent?.scaling ?? 'first loading',
+    factorCovariances: own.factorCovariances ?? parent?.factorCovariances ?? 'free',
+    across: own.across ?? parent?.across ?? null,
+    equal: own.equalAcrossGroups ?? parent?.equal ?? [],
+    except: [...(parent?.except ?? []), ...own.except],
+    changes: [...(parent?.changes ?? []), ...own.change]
+  }
+}
+
+/** The cells of a candidate on data of this frame. Throws InputError naming the candidate and the cell. */
+export function candidateCells(candidate: ResolvedCandidate, frame: ModelFrame): ModelCells {
+  return new CellBuilder(candidate, frame).build()
+}
+
+/** One cell while the model is being built; `leader` makes the classes of equal cells (a disjoint-set forest). */
+interface Node {
+  part: CellPart
+  of: string[]
+  group: number
+  /** null while free. */
+  fixed: number | null
+  leader: Node | null
+}
+
+const setOfPart: Record<CellPart, EqualSet> = {
+  loading: 'loadings',
+  'factor regression': 'loadings',
+  intercept: 'intercepts',
+  'residual variance': 'residual variances',
+  'residual covariance': 'residual covariances',
+  'factor variance': 'factor variances',
+  'factor covariance': 'factor covariances',
+  'factor mean': 'factor means'
+}
+
+class CellBuilder {
+  private readonly candidate: ResolvedCandidate
+  private readonly frame: ModelFrame
+  private readonly indicators: string[]
+  private readonly factorNames: string[]
+  private readonly groups: (string | null)[]
+  private readonly nodes = new Map<string, Node>()
+  /** Factors that another factor measures or predicts. */
+  private readonly endogenous = new Set<string>()
+
+  constructor(candidate: ResolvedCandidate, frame: ModelFrame) {
+    this.candidate = candidate
+    this.frame = frame
+    this.factorNames = candidate.factors.map((f) => f.name)
+    this.groups = this.groupNames()
+    this.indicators = this.usedIndicators()
+  }
+
+  build(): ModelCells {
+    this.groups.forEach((_, g) => {
+      this.placePattern(g)
+    })
+    const constraints = this.scale()
+    this.tieAcrossGroups()
+    for (const change of this.candidate.changes) this.apply(change)
+    const labels = this.labels()
+    return {
+      indicators: this.indicators,
+      factors: this.factorNames,
+      groups: this.groups.map((name, g) => this.groupCells(name, g, labels)),
+      constraints: constraints.map((make) => make(labels)).filter((c) => c !== null)
+    }
+  }
+
+  private fail(what: string, remedy: string | null = null): never {
+    throw new InputError(what, { where: `candidate "${this.candidate.name}"`, remedy })
+  }
+
+  private groupNames(): (string | null)[] {
+    const { across } = this.candidate
+    if (across === null) return [null]
+    if (this.frame.grouping === null) this.fail(`it is modelled across "${across}", but the data have no groups`)
+    if (across !== this.frame.grouping)
+      this.fail(`it is modelled across "${across}", but the data are grouped by "${this.frame.grouping}"`)
+    return [...this.frame.groups]
+  }
+
+  private usedIndicators(): string[] {
+    const used = new Set<string>()
+    for (const factor of this.candidate.factors) {
+      for (const name of factor.measures) {
+        if (this.factorNames.includes(name)) {
+          if (name === factor.name) this.fail(`factor "${name}" measures itself`)
+          this.endogenous.add(name)
+        } else if (this.frame.indicators.includes(name)) used.add(name)
+        else {
+          const remedy = didYouMean(name, [...this.frame.indicators, ...this.factorNames], 'indicators and factors')
+          this.fail(`factor "${factor.name}" measures "${name}", which is neither an indicator nor a factor`, remedy)
+        }
+      }
+    }
+    return this.frame.indicators.filter((name) => used.has(name))
+  }
+
+  private key(part: CellPart, of: readonly string[], group: number): string {
+    const names = part === 'residual covariance' || part === 'factor covariance' ? [...of].sort() : of
+    return JSON.stringify([part, group, ...names])
+  }
+
+  private node(part: CellPart, of: readonly string[], group: number): Node | undefined {
+    return this.nodes.get(this.key(part, of, group))
+  }
+
+  private put(part: CellPart, of: string[], group: number, fixed: number | null): Node {
+    const node: Node = { part, of, group, fixed, leader: null }
+    this.nodes.set(this.key(part, of, group), node)
+    return node
+  }
+
+  private loadingPart(measure: string): CellPart {
+    return this.factorNames.includes(measure) ? 'factor regression' : 'loading'
+  }
+
+  private placePattern(g: number): void {
+    for (const factor of this.candidate.factors) {
+      for (const measure of factor.measures) this.put(this.loadingPart(measure), [measure, factor.name], g, null)
+      this.put('factor variance', [factor.name], g, null)
+    }
+    const exogenous = this.factorNames.filter((name) => !this.endogenous.has(name))
+    exogenous.forEach((a, i) => {
+      for (const b of exogenous.slice(0, i))
+        this.put('factor covariance', [b, a], g, this.candidate.factorCovariances === 'free' ? null : 0)
+    })
+    for (const indicator of this.indicators) {
+      this.put('residual variance', [indicator], g, null)
+      if (this.frame.means) this.put('intercept', [indicator], g, null)
+    }
+    if (this.frame.means) for (const name of this.factorNames) this.put('factor mean', [name], g, 0)
+  }
+
+  /** Whether a cell of this part is held equal to the first group's, in group g. */
+  private held(part: CellPart, of: readonly string[], g: number): boolean {
+    if (!this.candidate.equal.includes(setOfPart[part])) return false
+    return !this.candidate.except.some((r) => this.sameCell(r.cell, part, of) && (r.group === null || r.group === this.groups[g]))
+  }
+
+  private sameCell(cell: CellName, part: CellPart, of: readonly string[]): boolean {
+    return cell.part === part && this.key(part, cell.of, 0) === this.key(part, of, 0)
+  }
+
+  /** Fixes what sets each factor's scale; returns the equations of effects coding, to be made once labels are known. */
+  private scale(): ((labels: Map<Node, string>) => LinearConstraint | null)[] {
+    const { scaling, factors, equal } = this.candidate
+    const constraints: ((labels: Map<Node, string>) => LinearConstraint | null)[] = []
+    const meansCoded = new Set<string>()
+    for (const factor of factors) {
+      this.groups.forEach((_, g) => {
+        if (scaling === 'first loading') this.fixReference(factor, g)
+        if (scaling === 'factor variance' && !(g > 0 && this.anyHeld(factor, g)))
+          this.node('factor variance', [factor.name], g)!.fixed = 1
+        if (scaling === 'effects coding') constraints.push(this.sumOf(this.loadingNodes(factor, g), factor.measures.length))
+      })
+      this.scaleMeans(factor, equal, meansCoded, constraints)
+    }
+    return constraints
+  }
+
+  /** The first loading that no group has released carries the scale in every group. */
+  private fixReference(factor: Factor, g: number): void {
+    const everywhereHeld = (measure: string) => {
+      const part = this.loadingPart(measure)
+      return !this.candidate.except.some((r) => this.sameCell(r.cell, part, [measure, factor.name]))
+    }
+    const reference = factor.measures.find(everywhereHeld) ?? factor.measures[0]!
+    this.node(this.loadingPart(reference), [reference, factor.name], g)!.fixed = 1
+  }
+
+  private anyHeld(factor: Factor, g: number): boolean {
+    return factor.measures.some((measure) => this.held(this.loadingPart(measure), [measure, factor.name], g))
+  }
+
+  private loadingNodes(factor: Factor, g: number): Node[] {
+    return factor.measures.map((measure) => this.node(this.loadingPart(measure), [measure, factor.name], g)!)
+  }
+
+  /**
+   * Factor means: zero in the first group and free elsewhere once intercepts are held there; under effects coding free
+   * everywhere with intercepts that sum to zero (of a factor that shares no indicator with one already coded so).
+   */
+  private scaleMeans(
+    factor: Factor,
+    equal: readonly EqualSet[],
+    coded: Set<string>,
+    constraints: ((labels: Map<Node, string>) => LinearConstraint | null)[]
+  ): void {
+    const own = factor.measures.filter((measure) => this.indicators.includes(measure))
+    if (!this.frame.means || own.length === 0) return
+    const effects = this.candidate.scaling === 'effects coding' && own.every((indicator) => !coded.has(indicator))
+    if (effects) for (const indicator of own) coded.add(indicator)
+    this.groups.forEach((_, g) => {
+      const estimable = g > 0 && own.some((indicator) => this.held('intercept', [indicator], g))
+      if (effects || (estimable && !equal.includes('factor means'))) this.node('factor mean', [factor.name], g)!.fixed = null
+      if (effects) {
+        constraints.push(
+          this.sumOf(
+            own.map((indicator) => this.node('intercept', [indicator], g)!),
+            0
+          )
+        )
+      }
+    })
+  }
+
+  /** sum of the nodes = total, with fixed ones moved to the right; null when nothing is left to constrain. */
+  private sumOf(nodes: Node[], total: number): (labels: Map<Node, string>) => LinearConstraint | null {
+    return (labels) => {
+      const free = nodes.filter((node) => this.top(node).fixed === null)
+      const rest = nodes.reduce((sum, node) => sum + (this.top(node).fixed ?? 0), 0)
+      if (free.length === 0) return null
+      return { terms: free.map((node) => ({ label: labels.get(this.top(node))!, weight: 1 })), equals: total - rest }
+    }
+  }
+
+  private tieAcrossGroups(): void {
+    if (this.candidate.equal.length > 0 && this.groups.length < 2) {
+      this.fail('parts are held equal across groups, but it is not modelled across any', 'Add across: and the grouping column.')
+    }
+    for (const release of this.candidate.except) this.checkRelease(release)
+    for (const node of [...this.nodes.values()]) if (node.group > 0) this.tieToFirstGroup(node)
+  }
+
+  private checkRelease({ cell, group }: Release): void {
+    this.checkCell(cell)
+    if (group !== null && !this.groups.includes(group))
+      this.fail(`there is no group "${group}"`, didYouMean(group, this.groupList(), 'groups'))
+    if (!this.candidate.equal.includes(setOfPart[cell.part])) {
+      this.fail(`${cellWords(cell.part, cell.of)} cannot be released: ${setOfPart[cell.part]} are not held equal across groups`)
+    }
+  }
+
+  private groupList(): string[] {
+    return this.groups.filter((g) => g !== null)
+  }
+
+  private tieToFirstGroup(node: Node): void {
+    if (!this.held(node.part, node.of, node.group)) return
+    const anchor = this.groups.findIndex((_, g) => g < node.group && this.held(node.part, node.of, g))
+    const first = anchor < 0 ? undefined : this.node(node.part, node.of, anchor)
+    if (first !== undefined) this.tie(first, node)
+  }
+
+  private top(node: Node): Node {
+    return node.leader === null ? node : this.top(node.leader)
+  }
+
+  /** Makes two cells equal; a fixed one fixes both. */
+  private tie(a: Node, b: Node): void {
+    const first = this.top(a)
+    const second = this.top(b)
+    if (first === second) return
+    if (first.fixed !== null && second.fixed !== null && first.fixed !== second.fixed) {
+      const words = `${cellWords(a.part, a.of)} is fixed at ${first.fixed} and ${cellWords(b.part, b.of)} at ${second.fixed}`
+      this.fail(`${words}, so they cannot be equal`)
+    }
+    first.fixed = first.fixed ?? second.fixed
+    second.leader = first
+  }
+
+  /** Takes a cell out of its class, which keeps its value for the others. */
+  private leave(node: Node): void {
+    const followers = [...this.nodes.values()].filter((n) => n !== node && this.top(n) === this.top(node))
+    const { fixed } = this.top(node)
+    node.leader = null
+    const [head, ...rest] = followers
+    if (head === undefined) return
+    head.leader = null
+    head.fixed = fixed
+    for (const follower of rest) {
+      follower.leader = head
+      follower.fixed = null
+    }
+  }
+
+  private checkCell(cell: CellName): void {
+    const { part, of } = cell
+    if (of.length !== namesOfPart[part]) this.fail(`a ${part} takes ${namesOfPart[part]} name(s), not ${of.length}`)
+    const kinds: Record<CellPart, ('indicator' | 'factor')[]> = {
+      loading: ['indicator', 'factor'],
+      'residual variance': ['indicator'],
+      'residual covariance': ['indicator', 'indicator'],
+      'factor variance': ['factor'],
+      'factor covariance': ['factor', 'factor'],
+      intercept: ['indicator'],
+      'factor mean': ['factor'],
+      'factor regression': ['factor', 'factor']
+    }
+    kinds[part].forEach((kind, i) => {
+      const known = kind === 'indicator' ? this.indicators : this.factorNames
+      const name = of[i]!
+      if (!known.includes(name))
+        this.fail(`${cellWords(part, of)} names "${name}", which is no ${kind} of it`, didYouMean(name, known, `${kind}s`))
+    })
+    if (of.length === 2 && of[0] === of[1]) this.fail(`${cellWords(part, of)} names "${of[0]}" twice`)
+    if ((part === 'intercept' || part === 'factor mean') && !this.frame.means) {
+      this.fail(`${cellWords(part, of)} is named, but the data have no means`)
+    }
+  }
+
+  private apply(change: Change): void {
+    const groups = this.groupsOf(change.group)
+    if (change.do === 'equal') {
+      for (const cell of change.cells) this.checkCell(cell)
+      for (const g of groups) this.tieCells(change.cells, g)
+      return
+    }
+    this.checkCell(change.cell)
+    const { part, of } = change.cell
+    for (const g of groups) {
+      if (change.do === 'fix') this.fix(part, of, g, change.at)
+      else this.free(part, of, g, change.group === null)
+    }
+  }
+
+  private groupsOf(group: string | null): number[] {
+    if (group === null) return this.groups.map((_, g) => g)
+    const at = this.groups.indexOf(group)
+    if (at < 0) this.fail(`there is no group "${group}"`, didYouMean(group, this.groupList(), 'groups'))
+    return [at]
+  }
+
+  private tieCells(cells: readonly CellName[], g: number): void {
+    const nodes = cells.map(
+      (cell) =>
+        this.node(cell.part, cell.of, g) ??
+        this.fail(`${cellWords(cell.part, cell.of)} is not in the model, so it cannot be made equal`, 'Free it first.')
+    )
+    for (const node of nodes.slice(1)) this.tie(nodes[0]!, node)
+  }
+
+  private fix(part: CellPart, of: string[], g: number, at: number): void {
+    const node = this.node(part, of, g) ?? this.put(part, of, g, at)
+    this.leave(node)
+    node.fixed = at
+  }
+
+  /** A cell that was fixed joins its part's equality across groups; one that was free becomes a parameter of its own. */
+  private free(part: CellPart, of: string[], g: number, everywhere: boolean): void {
+    const existing = this.node(part, of, g)
+    const wasFree = existing !== undefined && this.top(existing).fixed === null
+    const node = existing ?? this.put(part, of, g, 0)
+    this.leave(node)
+    node.fixed = null
+    if (part === 'factor regression') this.dropCovariance(of, g)
+    if (!wasFree && everywhere && g > 0) this.tieToFirstGroup(node)
+  }
+
+  /** A regression takes the place of the two factors' covariance, which would otherwise say the same twice. */
+  private dropCovariance(of: string[], g: number): void {
+    const covariance = this.node('factor covariance', of, g)
+    if (covariance === undefined) return
+    this.leave(covariance)
+    covariance.fixed = 0
+  }
+
+  /** A label for each class of free cells: a letter for those that are shared, words of its own for the rest. */
+  private labels(): Map<Node, string> {
+    const members = new Map<Node, number>()
+    for (const node of this.nodes.values()) {
+      const top = this.top(node)
+      if (top.fixed === null) members.set(top, (members.get(top) ?? 0) + 1)
+    }
+    const labels = new Map<Node, string>()
+    let shared = 0
+    for (const [top, count] of members) {
+      labels.set(top, count > 1 ? letters(shared++) : this.key(top.part, top.of, top.group))
+    }
+    return labels
+  }
+
+  private groupCells(name: string | null, g: number, labels: Map<Node, string>): GroupCells {
+    const cell = (part: CellPart, of: string[]): Cell => {
+      const node = this.node(part, of, g)
+      if (node === undefined) return 0
+      const top = this.top(node)
+      return top.fixed ?? labels.get(top)!
+    }
+    const { indicators, factorNames } = this
+    const sheet = (rows: string[], columns: string[], part: CellPart, diagonal: CellPart | null = null) =>
+      rows.map((row) =>
+        columns.map((column) => (diagonal !== null && row === column ? cell(diagonal, [row]) : cell(part, [row, column])))
+      )
+    return {
+      name,
+      loadings: sheet(indicators, factorNames, 'loading'),
+      regressions: sheet(factorNames, factorNames, 'factor regression'),
+      factorCovariances: sheet(factorNames, factorNames, 'factor covariance', 'factor variance'),
+      residualCovariances: sheet(indicators, indicators, 'residual covariance', 'residual variance'),
+      intercepts: this.frame.means ? indicators.map((i) => cell('intercept', [i])) : null,
+      factorMeans: this.frame.means ? factorNames.map((f) => cell('factor mean', [f])) : null
+    }
+  }
+}
+
+/** a, b, ... z, aa, ab, ... */
+function letters(index: number): string {
+  const last = String.fromCharCode(97 + (index % 26))
+  return index < 26 ? last : letters(Math.floor(index / 26) - 1) + last
+}

@@ -22,8 +22,8 @@ Usage:
 compare   fits the plan's candidates and prints each ladder, top rung first.
   --project FILE   also record data, candidates, fits and steps in this project
                    file (made if it is not there)
-  --json FILE      also write the result as JSON; "-" writes it to standard output
-                   in place of the text
+  --json FILE      also write the result as JSON; "-" writes it to standard
+                   output in place of the text
 open      opens the window on a plan, a project file, or the sample study.
 
 Exit status: 0 done, 1 a fault of the program, 2 bad input (one message on

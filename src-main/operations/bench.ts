@@ -19,12 +19,15 @@ export interface BenchParts {
   version: string
 }
 
-/** Owns the open project: whoever replaces it, closes the one before. */
+/** Owns the open project: one that is replaced is closed once no call works on it any more. */
 export class Bench {
   readonly parts: BenchParts
   readonly #listeners = new Set<(event: WorkEvent) => void>()
+  readonly #retired = new Set<Project>()
+  readonly #waiting: (() => void)[] = []
   #project: Project | null = null
   #running: AbortController | null = null
+  #calls = 0
 
   constructor(parts: BenchParts) {
     this.parts = parts
@@ -36,25 +39,26 @@ export class Bench {
 
   /** @throws InputError when no study is open */
   requireProject(): Project {
-    if (this.#project === null)
+    if (this.#project === null) {
       throw new InputError('no study is open', { remedy: 'Open a plan or a project, or start a study on a data file.' })
+    }
     return this.#project
   }
 
-  /** Makes `project` the open one. @throws InputError while fits are running */
+  /** Makes `project` the open one; the one before stays when the new one cannot be shown. @throws InputError while fits are running */
   async replace(project: Project): Promise<StudyView> {
-    let view: StudyView
+    const before = this.#project
     try {
       this.requireRest()
-      view = await studyView(project, this.parts.crew, this.parts.version)
-      this.requireRest()
+      this.#project = project // at once, so that no call in between writes to the one that goes
+      const view = await this.view()
+      if (before !== null) this.#retired.add(before)
+      return view
     } catch (error) {
-      project.close()
+      if (this.#project === project) this.#project = before
+      this.#retired.add(project)
       throw error
     }
-    this.#project?.close()
-    this.#project = project
-    return view
   }
 
   view(): Promise<StudyView> {
@@ -63,8 +67,20 @@ export class Bench {
 
   /** @throws InputError while fits are running */
   requireRest(): void {
-    if (this.#running !== null)
+    if (this.#running !== null) {
       throw new InputError('candidates are being fitted', { remedy: 'Wait until they are done, or stop them first.' })
+    }
+  }
+
+  /** Runs one call; projects it leaves behind are closed when no other call is at work. */
+  async during<T>(call: () => Promise<T>): Promise<T> {
+    this.#calls++
+    try {
+      return await call()
+    } finally {
+      this.#calls--
+      if (this.#calls === 0) this.#tidy()
+    }
   }
 
   /** Runs one stretch of work that `stopWork` can abort. @throws InputError while another is running */
@@ -92,10 +108,18 @@ export class Bench {
     return () => this.#listeners.delete(listener)
   }
 
+  /** Stops running work, waits for every call to end, then closes crew and project. */
   async close(): Promise<void> {
     this.stopWork()
+    if (this.#calls > 0) await new Promise<void>((idle) => this.#waiting.push(idle))
     await this.parts.crew.close()
     this.#project?.close()
     this.#project = null
+  }
+
+  #tidy(): void {
+    for (const project of this.#retired) project.close()
+    this.#retired.clear()
+    for (const idle of this.#waiting.splice(0)) idle()
   }
 }

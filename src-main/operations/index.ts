@@ -21,14 +21,14 @@ export interface Workbench {
   call<N extends OperationName>(name: N, input: unknown): Promise<Answer<Operations[N]['result']>>
   call(name: string, input: unknown): Promise<Answer<unknown>>
   onWork(listener: (event: WorkEvent) => void): () => void
-  /** Stops running work, ends the crew, closes the project. */
+  /** Stops running work, keeps what was finished, ends the crew and closes the project. */
   close(): Promise<void>
 }
 
 export function createWorkbench(parts: BenchParts): Workbench {
   const bench = new Bench(parts)
   return {
-    call: (name: string, input: unknown) => answer(bench, name, input),
+    call: (name: string, input: unknown) => bench.during(() => answer(bench, name, input)),
     onWork: (listener) => bench.onWork(listener),
     close: () => bench.close()
   }

@@ -67,7 +67,10 @@ export async function newStudy(bench: Bench, input: Operations['newStudy']['inpu
 
 function requireStudy(project: Project): void {
   if (!project.isEmpty) return
-  throw new InputError('this project file holds no study yet', { where: project.file, remedy: 'Open another one, or start a study.' })
+  throw new InputError('this project file holds no study yet', {
+    where: project.file,
+    remedy: 'Open another one, or start a study.'
+  })
 }
 
 function projectOf({ plan, data, folder }: ReadPlan, bench: Bench): Project {

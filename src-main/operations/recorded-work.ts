@@ -30,11 +30,11 @@ export async function compareRecorded(work: RecordedWork, crew: Crew, options: C
   return compareStudy({ plan, data: project.data(), origins, names, memory, version: work.version }, seen.crew, options)
 }
 
-/** Notes in the trail how every ladder stands that has a fitted rung. */
+/** Notes in the trail how every ladder stands on which a step could be judged: both its sides were tried. */
 export function recordJudgements(project: Project, result: StudyResult, plan: Plan): void {
   const fitted = new Set(result.candidates.map((candidate) => candidate.name))
   for (const ladder of result.ladders) {
-    if (ladder.rungs.some((rung) => fitted.has(rung))) project.recordJudgement(ladder, plan.rules)
+    if (ladder.steps.some(({ from, to }) => fitted.has(from) && fitted.has(to))) project.recordJudgement(ladder, plan.rules)
   }
 }
 

@@ -159,6 +159,39 @@ describe('fitting', () => {
     await workbench.close()
   })
 
+  it('closes in the middle of the work with everything finished in the file', async () => {
+    const { crew, reached } = gatedCrew(1)
+    const { workbench } = startBench(folder, crew)
+    await done(workbench, 'openPlan', plan)
+    await done(workbench, 'saveProject', { path: file })
+    const work = workbench.call('fitCandidates', { names: null })
+    await reached
+    await workbench.close()
+    expect((await work).ok).toBe(true)
+    expect(readdirSync(folder).sort()).toEqual(['noise.csv', 'noise.rungwise', 'plan.yaml'])
+    const other = startBench(folder).workbench
+    const view = await done(other, 'openProject', { path: file })
+    expect(view.result.candidates).toHaveLength(1)
+    expect(codes(view).at(-1)).toBe('fitting stopped')
+    await other.close()
+  })
+
+  it('answers calls that come while another study is being opened', async () => {
+    const { workbench } = startBench(folder)
+    await done(workbench, 'openPlan', plan)
+    await done(workbench, 'fitCandidates', { names: null })
+    const answers = await Promise.all([
+      done(workbench, 'addLadder', { ladder: { name: 'Other', rungs: ['Two noises', 'One noise'] } }),
+      done(workbench, 'openPlan', plan),
+      done(workbench, 'currentStudy', null),
+      done(workbench, 'saveProject', { path: file }),
+      done(workbench, 'openPlan', plan)
+    ])
+    expect(answers.map((view) => view?.ladders.length)).toEqual([2, 1, 2, 2, 1])
+    await workbench.close()
+    expect(readdirSync(folder).sort()).toEqual(['noise.csv', 'noise.rungwise', 'plan.yaml'])
+  })
+
   it('lets a fault of the crew through as a fault, with what was finished kept', async () => {
     let count = 0
     const faulty = {

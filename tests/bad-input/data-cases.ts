@@ -31,7 +31,7 @@ const summary = (name: string, part: string, by: string, message: string): BadIn
 })
 
 const inFiles: BadInput[] = [
-  { name: 'no such file', files: {}, plan: GOOD_PLAN, message: 'a.csv: There is no such file.' },
+  { name: 'no such file', files: {}, plan: GOOD_PLAN, message: 'here is no such file' },
   data('an empty file', '', 'a.csv: The file is empty.'),
   data('a header without rows', csv([]), 'a.csv: The file has a header but no rows.'),
   data(

@@ -40,7 +40,7 @@ export class Bench {
   /** @throws InputError when no study is open */
   requireProject(): Project {
     if (this.#project === null) {
-      throw new InputError('no study is open', { remedy: 'Open a plan or a project, or start a study on a data file.' })
+      throw new InputError('No study is open.', { remedy: 'Open a plan or a project, or start a study on a data file.' })
     }
     return this.#project
   }
@@ -68,7 +68,7 @@ export class Bench {
   /** @throws InputError while fits are running */
   requireRest(): void {
     if (this.#running !== null) {
-      throw new InputError('candidates are being fitted', { remedy: 'Wait until they are done, or stop them first.' })
+      throw new InputError('Candidates are being fitted.', { remedy: 'Wait until they are done, or stop them first.' })
     }
   }
 

@@ -22,7 +22,7 @@ const kinds: Readonly<Record<string, FolderEntry['kind']>> = {
 export function listFolder(_bench: Bench, input: Operations['listFolder']['input']): FolderListing {
   const path = resolve(input.path ?? homedir())
   const found = statSync(path, { throwIfNoEntry: false })
-  if (!found?.isDirectory()) throw new InputError('there is no such folder', { where: path })
+  if (!found?.isDirectory()) throw new InputError('There is no such folder.', { where: path })
   const names = refusedBySystem(path, () => readdirSync(path)).filter((name) => !name.startsWith('.'))
   const entries = names.map((name) => entryOf(path, name)).filter((entry) => entry !== null)
   entries.sort(foldersFirst)

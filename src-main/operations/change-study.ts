@@ -11,7 +11,7 @@ export async function addCandidate(bench: Bench, { candidate }: Operations['addC
   const project = bench.requireProject()
   const plan = project.plan()
   if (familyOf(plan).candidates.some(({ name }) => name === candidate.name)) {
-    throw new InputError(`there is a candidate "${candidate.name}" already`, {
+    throw new InputError(`There is a candidate "${candidate.name}" already.`, {
       where: 'name',
       remedy: 'Give this one another name.'
     })
@@ -25,7 +25,7 @@ export async function addLadder(bench: Bench, { ladder }: Operations['addLadder'
   const project = bench.requireProject()
   const plan = project.plan()
   if (plan.ladders.some(({ name }) => name === ladder.name)) {
-    throw new InputError(`there is a ladder "${ladder.name}" already`, { where: 'name', remedy: 'Give this one another name.' })
+    throw new InputError(`There is a ladder "${ladder.name}" already.`, { where: 'name', remedy: 'Give this one another name.' })
   }
   checkFamily({ ...plan, ladders: [...plan.ladders, ladder] }, project.data())
   project.addLadder(ladder)

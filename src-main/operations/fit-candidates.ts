@@ -56,7 +56,7 @@ function requireKnown(names: string[] | null, known: string[]): void {
   const unknown = names?.find((name) => !known.includes(name))
   if (unknown === undefined) return
   const nearest = nearestWord(unknown, known)
-  throw new InputError(`there is no candidate "${unknown}"`, {
+  throw new InputError(`There is no candidate "${unknown}".`, {
     where: 'names',
     remedy: nearest === null ? null : `Did you mean "${nearest}"?`
   })

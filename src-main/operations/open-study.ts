@@ -67,7 +67,7 @@ export async function newStudy(bench: Bench, input: Operations['newStudy']['inpu
 
 function requireStudy(project: Project): void {
   if (!project.isEmpty) return
-  throw new InputError('this project file holds no study yet', {
+  throw new InputError('This project file holds no study yet.', {
     where: project.file,
     remedy: 'Open another one, or start a study.'
   })
@@ -88,6 +88,6 @@ function asText(bytes: Uint8Array, path: string): string {
   try {
     return new TextDecoder('utf-8', { fatal: true }).decode(bytes)
   } catch {
-    throw new InputError('this file is not UTF-8 text', { where: path, remedy: 'Save the plan as UTF-8.' })
+    throw new InputError('This file is not UTF-8 text.', { where: path, remedy: 'Save the plan as UTF-8.' })
   }
 }

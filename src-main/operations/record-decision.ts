@@ -11,11 +11,11 @@ export async function recordDecision(bench: Bench, decision: Operations['recordD
   const project = bench.requireProject()
   const plan = project.plan()
   const ladder = plan.ladders.find(({ name }) => name === decision.ladder)
-  if (ladder === undefined) throw new InputError(`there is no ladder "${decision.ladder}"`, { where: 'ladder' })
+  if (ladder === undefined) throw new InputError(`There is no ladder "${decision.ladder}".`, { where: 'ladder' })
   const rungs = ladderRungs(ladder, plan.candidates)
   if (!rungs.includes(decision.rung)) {
     const remedy = `Its rungs are ${rungs.map((rung) => `"${rung}"`).join(', ')}.`
-    throw new InputError(`the ladder "${ladder.name}" has no rung "${decision.rung}"`, { where: 'rung', remedy })
+    throw new InputError(`The ladder "${ladder.name}" has no rung "${decision.rung}".`, { where: 'rung', remedy })
   }
   project.recordDecision(decision)
   return bench.view()

@@ -176,30 +176,50 @@ describe('a plan that cannot be run', () => {
   it('leaves a project of another study as it was', async () => {
     await run()
     writePlan(noisePlan.replace('study: Evening noise', 'study: Morning noise'))
-    await expectRefused(/this project file holds another study, "Evening noise"/)
+    await expectRefused(/This project file holds another study, "Evening noise"/)
   })
 
   it.each([
-    ['its rules are', noisePlan.replace('alpha: 0.05', 'alpha: 0.01')],
-    ['its data are', noisePlan.replace('  group: house\n', '')]
-  ])('leaves a fitted study as it was when %s not the same', async (what, text) => {
+    ['its rules are not those', noisePlan.replace('alpha: 0.05', 'alpha: 0.01')],
+    ['its data are not those', noisePlan.replace('  group: house\n', '')]
+  ])('leaves a fitted study as it was when %s of the plan', async (what, text) => {
     await run()
     writePlan(text)
-    await expectRefused(new RegExp(`this study was already fitted and ${what} not those of the plan`))
+    await expectRefused(new RegExp(`This study was already fitted and ${what} of the plan`))
+  })
+
+  it('leaves a fitted study as it was when its estimation is not the same', async () => {
+    const published = (convention: string) => `study: Published
+data:
+  indicators: [a, b, c]
+  divisor: n-1
+  summary:
+    - n: 200
+      covariance: [[2], [1, 2], [0.9, 1.1, 2]]
+estimation:
+  convention: ${convention}
+candidates:
+  One:
+    factors: { F: [a, b, c] }
+`
+    writePlan(published('normal'))
+    await run()
+    writePlan(published('wishart'))
+    await expectRefused(/This study was already fitted and its estimation is not that of the plan/)
   })
 
   it('does not let a changed candidate take the name of a fitted one', async () => {
     await run()
     writePlan(noisePlan.replace('at: 0', 'at: 0.1'))
-    await expectRefused(/the candidate "Apart" of the plan is not the one that was recorded/)
+    await expectRefused(/The candidate "Apart" of the plan is not the one that was recorded/)
   })
 
   it('leaves a file alone that is no project', async () => {
     writeFileSync(project, 'my notes')
-    await expectRefused(/this is not a Rungwise project file/)
+    await expectRefused(/This is not a Rungwise project file/)
   })
 
   it('says so when the folder of the project is not there', async () => {
-    await expectRefused(/there is no such folder/, { projectPath: join(folder, 'nowhere', 'noise.rungwise') })
+    await expectRefused(/There is no such folder/, { projectPath: join(folder, 'nowhere', 'noise.rungwise') })
   })
 })

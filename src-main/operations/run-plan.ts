@@ -111,16 +111,16 @@ function whatIsNew(project: Project, { plan, data }: ReadPlan): News {
   if (project.isEmpty) return { ...nothing, whole: true }
   const recorded = project.plan()
   if (recorded.study !== plan.study) {
-    throw new InputError(`this project file holds another study, "${recorded.study}"`, {
+    throw new InputError(`This project file holds another study, "${recorded.study}".`, {
       where: project.file,
       remedy: 'Name another project file for this plan.'
     })
   }
   const sameData = project.data().digest === data.digest
   if (!project.hasFits) return { ...nothing, whole: !sameData || !sameWords(plan, recorded) }
-  requireSame(sameData, 'its data are', project)
-  requireSame(canonicalJson(plan.estimation) === canonicalJson(recorded.estimation), 'its estimation is', project)
-  requireSame(canonicalJson(plan.rules) === canonicalJson(recorded.rules), 'its rules are', project)
+  requireSame(sameData, 'its data are not those', project)
+  requireSame(canonicalJson(plan.estimation) === canonicalJson(recorded.estimation), 'its estimation is not that', project)
+  requireSame(canonicalJson(plan.rules) === canonicalJson(recorded.rules), 'its rules are not those', project)
   const candidates = newOnes('candidate', recorded.candidates, plan.candidates, project)
   const ladders = newOnes('ladder', recorded.ladders, plan.ladders, project)
   if (candidates.length + ladders.length > 0) {
@@ -141,9 +141,9 @@ function sameWords(a: Plan, b: Plan): boolean {
 
 function requireSame(same: boolean, what: string, project: Project): void {
   if (same) return
-  throw new InputError(`this study was already fitted and ${what} not those of the plan`, {
+  throw new InputError(`This study was already fitted and ${what} of the plan.`, {
     where: project.file,
-    remedy: 'They stand since the first fit. Restore them in the plan, or name another project file.'
+    remedy: 'Data, estimation and rules stand since the first fit. Restore them in the plan, or name another project file.'
   })
 }
 
@@ -153,7 +153,7 @@ function newOnes<T extends { name: string }>(kind: string, recorded: readonly T[
   for (const one of wanted) {
     const there = byName.get(one.name)
     if (there === undefined || canonicalJson(there) === canonicalJson(one)) continue
-    throw new InputError(`the ${kind} "${one.name}" of the plan is not the one that was recorded when results were seen`, {
+    throw new InputError(`The ${kind} "${one.name}" of the plan is not the one that was recorded when results were seen.`, {
       where: project.file,
       remedy: 'Give the changed one a name of its own; the recorded one stays.'
     })

@@ -38,7 +38,7 @@ export async function exportResult(bench: Bench, { path }: Operations['exportRes
   const target = resolve(path)
   const { result } = await bench.view()
   if (result.candidates.length === 0)
-    throw new InputError('nothing is fitted yet, so there is no result to write', { remedy: 'Fit the candidates first.' })
+    throw new InputError('Nothing is fitted yet, so there is no result to write.', { remedy: 'Fit the candidates first.' })
   writeWhole(target, resultJson(result))
   project.note({
     what: 'result exported',
@@ -58,7 +58,7 @@ function movedPlan(plan: Plan, from: string | null, to: string): Plan {
 /** So that a slip of the hand does not write a plan over the data. */
 function requireEnding(path: string, endings: readonly string[], what: string): void {
   if (endings.includes(extname(path).toLowerCase())) return
-  throw new InputError(`the name of ${what} ends in ${endings.join(' or ')}`, {
+  throw new InputError(`The name of ${what} ends in ${endings.join(' or ')}.`, {
     where: path,
     remedy: `Add ${endings[0]} to the name.`
   })
@@ -67,9 +67,9 @@ function requireEnding(path: string, endings: readonly string[], what: string): 
 function writeWhole(path: string, text: string): void {
   const folder = dirname(path)
   if (!statSync(folder, { throwIfNoEntry: false })?.isDirectory())
-    throw new InputError('there is no such folder', { where: folder })
+    throw new InputError('There is no such folder.', { where: folder })
   if (statSync(path, { throwIfNoEntry: false })?.isDirectory())
-    throw new InputError('there is a folder of this name', { where: path })
+    throw new InputError('There is a folder of this name.', { where: path })
   const draft = join(folder, `.${basename(path)}.${randomUUID()}`)
   refusedBySystem(path, () => {
     try {

@@ -62,7 +62,7 @@ export async function readFile(path: string): Promise<Uint8Array> {
   try {
     return readFileSync(path)
   } catch {
-    throw new InputError('there is no such file', { where: path })
+    throw new InputError('There is no such file.', { where: path })
   }
 }
 

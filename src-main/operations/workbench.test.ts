@@ -66,7 +66,7 @@ describe('opening', () => {
     const view = await done(workbench, 'openPlan', plan)
     writeFileSync(join(folder, 'bad.yaml'), 'study: Nothing\n')
     expect(await refused(workbench, 'openPlan', { path: join(folder, 'bad.yaml') })).toMatch(/data/)
-    expect(await refused(workbench, 'openPlan', { path: join(folder, 'none.yaml') })).toMatch(/there is no such file/)
+    expect(await refused(workbench, 'openPlan', { path: join(folder, 'none.yaml') })).toMatch(/There is no such file/)
     expect(await refused(workbench, 'openProject', { path: join(folder, 'noise.csv') })).toMatch(/not a Rungwise project file/)
     expect(await done(workbench, 'currentStudy', null)).toEqual(view)
     await workbench.close()
@@ -135,7 +135,7 @@ describe('fitting', () => {
     await done(workbench, 'fitCandidates', { names: null })
     expect(fits()).toBe(3)
     expect(await refused(workbench, 'fitCandidates', { names: ['Aprat'] })).toBe(
-      'names | there is no candidate "Aprat" | Did you mean "Apart"?'
+      'names | There is no candidate "Aprat". | Did you mean "Apart"?'
     )
     await workbench.close()
   })
@@ -146,9 +146,9 @@ describe('fitting', () => {
     await done(workbench, 'openPlan', plan)
     const work = done(workbench, 'fitCandidates', { names: null })
     await reached
-    expect(await refused(workbench, 'fitCandidates', { names: null })).toMatch(/candidates are being fitted/)
-    expect(await refused(workbench, 'openPlan', plan)).toMatch(/candidates are being fitted/)
-    expect(await refused(workbench, 'saveProject', { path: file })).toMatch(/candidates are being fitted/)
+    expect(await refused(workbench, 'fitCandidates', { names: null })).toMatch(/Candidates are being fitted/)
+    expect(await refused(workbench, 'openPlan', plan)).toMatch(/Candidates are being fitted/)
+    expect(await refused(workbench, 'saveProject', { path: file })).toMatch(/Candidates are being fitted/)
     await done(workbench, 'cancelWork', null)
     const view = await work
     expect(Object.values(states(view)).filter((state) => state === 'fitted')).toHaveLength(2)
@@ -246,7 +246,7 @@ describe('changing the study', () => {
     expect(rungs).toHaveLength(3)
     expect(rungs.every(({ origin, state }) => origin === 'added after results' && state === 'draft')).toBe(true)
     expect(await refused(workbench, 'changeRules', { rules: rulesSchema.parse({}) })).toMatch(
-      /the rules stand since the first candidate was fitted/
+      /The rules stand since the first candidate was fitted/
     )
     expect((await done(workbench, 'currentStudy', null))?.rules.alpha).toBe(0.01)
     await workbench.close()
@@ -299,7 +299,7 @@ describe('changing the study', () => {
 
 describe('bad input', () => {
   it.each([
-    ['addCandidate', { candidate: { ...crossed, name: 'Apart' } }, /there is a candidate "Apart" already/],
+    ['addCandidate', { candidate: { ...crossed, name: 'Apart' } }, /There is a candidate "Apart" already/],
     ['addCandidate', { candidate: { ...crossed, from: 'Apatr' } }, /Apatr/],
     ['addCandidate', { candidate: { ...crossed, name: '  ' } }, /candidate\.name/],
     ['addCandidate', { candidate: { ...crossed, colour: 'blue' } }, /colour/],
@@ -309,25 +309,25 @@ describe('bad input', () => {
       /buzz/
     ],
     ['addCandidate', null, /expected object/],
-    ['addLadder', { ladder: { name: 'Structure', rungs: ['Apart'] } }, /there is a ladder "Structure" already/],
+    ['addLadder', { ladder: { name: 'Structure', rungs: ['Apart'] } }, /There is a ladder "Structure" already/],
     ['addLadder', { ladder: { name: 'New', rungs: ['Nobody'] } }, /Nobody/],
     ['addLadder', { ladder: { ...houses, across: 'street' } }, /street/],
     ['changeRules', { rules: { alpha: 2 } }, /rules\.alpha/],
     ['changeRules', { rules: { decideBy: 'change in fit' } }, /threshold/],
-    ['recordDecision', { ladder: 'Nowhere', rung: 'Apart', reason: 'x' }, /there is no ladder "Nowhere"/],
+    ['recordDecision', { ladder: 'Nowhere', rung: 'Apart', reason: 'x' }, /There is no ladder "Nowhere"/],
     [
       'recordDecision',
       { ladder: 'Structure', rung: 'One noise', reason: 'x' },
-      /has no rung "One noise" \| Its rungs are "Two noises", "Apart"/
+      /has no rung "One noise"\. \| Its rungs are "Two noises", "Apart"/
     ],
     ['recordDecision', { ladder: 'Structure', rung: 'Apart', reason: ' ' }, /reason/],
     ['checkCandidate', { candidate: { ...crossed, factors: [{ name: 'F', measures: ['buzz'] }] } }, /buzz/],
     ['fitCandidates', { names: 'all' }, /names/],
     ['exportPlan', { path: '/tmp/noise.csv' }, /ends in \.yaml or \.yml/],
     ['exportResult', { path: 'result.txt' }, /ends in \.json/],
-    ['exportResult', { path: 'result.json' }, /nothing is fitted yet/],
+    ['exportResult', { path: 'result.json' }, /Nothing is fitted yet/],
     ['saveProject', { path: 'noise.csv' }, /ends in \.rungwise/],
-    ['listFolder', { path: '/no/such/folder' }, /there is no such folder/],
+    ['listFolder', { path: '/no/such/folder' }, /There is no such folder/],
     ['openSample', {}, /expected null/]
   ] as const)('to %s is answered with the problem and changes nothing: %j', async (name, input, message) => {
     const { workbench } = startBench(folder)
@@ -345,7 +345,7 @@ describe('bad input', () => {
       ['fitCandidates', { names: null }],
       ['saveProject', { path: file }]
     ] as const) {
-      expect(await refused(workbench, name, input)).toMatch(/no study is open/)
+      expect(await refused(workbench, name, input)).toMatch(/No study is open/)
     }
     await workbench.close()
   })

@@ -28,18 +28,18 @@ export function closeDatabase(database: Database.Database): void {
 const refusals: readonly { pattern: RegExp; what: string; remedy: string }[] = [
   {
     pattern: /^(SQLITE_BUSY|SQLITE_LOCKED|EBUSY)/,
-    what: 'another program is using this file',
+    what: 'Another program is using this file.',
     remedy: 'Close it there and try again.'
   },
   {
     pattern: /^(SQLITE_READONLY|SQLITE_PERM|EACCES|EPERM|EROFS)/,
-    what: 'this file or its folder cannot be written',
+    what: 'This file or its folder cannot be written.',
     remedy: 'Change its rights, or choose another place.'
   },
-  { pattern: /^(SQLITE_FULL|ENOSPC|EDQUOT)/, what: 'the disk is full', remedy: 'Make room and try again.' },
+  { pattern: /^(SQLITE_FULL|ENOSPC|EDQUOT)/, what: 'The disk is full.', remedy: 'Make room and try again.' },
   {
     pattern: /^(SQLITE_CANTOPEN|ENOENT|ENOTDIR|EISDIR|ENAMETOOLONG|EINVAL)/,
-    what: 'this file cannot be opened',
+    what: 'This file cannot be opened.',
     remedy: 'Check its name and its folder.'
   }
 ]

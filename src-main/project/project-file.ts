@@ -27,7 +27,7 @@ export function createInMemory(): Database.Database {
  */
 export function createFile(path: string): Database.Database {
   if (existsSync(path))
-    throw new InputError('there is already a file of this name', { where: path, remedy: 'Choose another name.' })
+    throw new InputError('There is already a file of this name.', { where: path, remedy: 'Choose another name.' })
   requireFolder(path)
   return refusedBySystem(path, () => {
     const database = new Database(path)
@@ -103,13 +103,13 @@ function requireContinued(database: Database.Database, path: string): void {
   const there = examineFile(path)
   const ours = database.prepare<[], string>('SELECT digest FROM trail ORDER BY number').pluck().all()
   if (there.some((digest, k) => ours[k] !== digest)) {
-    throw new InputError('this project file holds records that the open study does not have, so it is not replaced', {
+    throw new InputError('This project file holds records that the open study does not have, so it is not replaced.', {
       where: path,
       remedy: 'Choose another name.'
     })
   }
   if (existsSync(`${path}-wal`)) {
-    throw new InputError('this project file is open elsewhere', { where: path, remedy: 'Close it there, or choose another name.' })
+    throw new InputError('This project file is open elsewhere.', { where: path, remedy: 'Close it there, or choose another name.' })
   }
 }
 
@@ -117,7 +117,7 @@ function requireFolder(path: string): void {
   const folder = dirname(resolve(path))
   const found = statSync(folder, { throwIfNoEntry: false })
   if (!found?.isDirectory())
-    throw new InputError('there is no such folder', { where: folder, remedy: 'Make it first, or choose another place.' })
+    throw new InputError('There is no such folder.', { where: folder, remedy: 'Make it first, or choose another place.' })
 }
 
 /** The database header: magic text at 0, user_version at 60, application_id at 68, both big-endian (SQLite file format, section 1.3). */
@@ -127,13 +127,13 @@ const magic = 'SQLite format 3\0'
 function judgeHeader(path: string): void {
   const header = firstBytes(path)
   if (header.length < headerLength || header.toString('latin1', 0, magic.length) !== magic) {
-    throw new InputError(`this is not a Rungwise project file`, {
+    throw new InputError(`This is not a Rungwise project file.`, {
       where: path,
       remedy: 'Open a file that was saved by Rungwise; its name usually ends in .rungwise.'
     })
   }
   if (header.readUInt32BE(68) !== applicationId) {
-    throw new InputError('this is a database of another program, not a Rungwise project file', {
+    throw new InputError('This is a database of another program, not a Rungwise project file.', {
       where: path,
       remedy: 'Open a file that was saved by Rungwise; its name usually ends in .rungwise.'
     })
@@ -143,8 +143,8 @@ function judgeHeader(path: string): void {
 
 function firstBytes(path: string): Buffer {
   const found = statSync(path, { throwIfNoEntry: false })
-  if (found === undefined) throw new InputError('there is no such file', { where: path })
-  if (!found.isFile()) throw new InputError('this is not a file', { where: path })
+  if (found === undefined) throw new InputError('There is no such file.', { where: path })
+  if (!found.isFile()) throw new InputError('This is not a file.', { where: path })
   return refusedBySystem(path, () => {
     const file = openSync(path, 'r')
     try {
@@ -159,7 +159,7 @@ function firstBytes(path: string): Buffer {
 function judgeVersion(path: string, version: number): void {
   if (version > schemaVersion) {
     throw new InputError(
-      `this project file was written by a newer Rungwise (file version ${version}; this program reads up to ${schemaVersion})`,
+      `This project file was written by a newer Rungwise (file version ${version}; this program reads up to ${schemaVersion}).`,
       {
         where: path,
         remedy: 'Open it with the newer program.'
@@ -217,7 +217,7 @@ function hasOurTables(copy: Database.Database): boolean {
 }
 
 function damaged(path: string): InputError {
-  return new InputError('this project file is damaged and was left as it is', {
+  return new InputError('This project file is damaged and was left as it is.', {
     where: path,
     remedy: 'Open a copy of it from before.'
   })

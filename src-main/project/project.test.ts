@@ -154,7 +154,7 @@ describe('a project file', () => {
     project.addCandidate(furtherCandidate)
     expect(project.candidateOrigins().get('One noise')).toBe('planned')
     expect(project.candidateOrigins().get('Two noises')).toBe('added after results')
-    expect(() => project.changeRules(smallPlan().rules)).toThrow(/the rules stand since the first candidate was fitted/)
+    expect(() => project.changeRules(smallPlan().rules)).toThrow(/The rules stand since the first candidate was fitted/)
     expect(project.plan().rules.alpha).toBe(0.01)
     project.close()
   })
@@ -328,13 +328,13 @@ describe('the trail', () => {
 })
 
 describe('a file that cannot be trusted is refused and keeps every byte', () => {
-  it('when there is none', () => expectRefused(/there is no such file/))
+  it('when there is none', () => expectRefused(/There is no such file/))
 
   it('when it is a folder', () => {
     rmSync(folder, { recursive: true })
     folder = mkdtempSync(join(tmpdir(), 'rungwise-project-'))
     path = folder
-    expectRefused(/this is not a file/)
+    expectRefused(/This is not a file/)
   })
 
   it.each([
@@ -343,7 +343,7 @@ describe('a file that cannot be trusted is refused and keeps every byte', () => 
     ['text that begins like a database', 'SQLite format 3\0but no more']
   ])('when it is %s', (_case, content) => {
     writeFileSync(path, content)
-    expectRefused(/this is not a Rungwise project file/)
+    expectRefused(/This is not a Rungwise project file/)
   })
 
   it('when it is the database of another program', () => {
@@ -437,7 +437,7 @@ describe('saving', () => {
     writeFileSync(path, 'important notes')
     const project = filled(createInMemoryProject(clock))
     const before = everything()
-    expect(() => project.saveAs(path)).toThrow(/this is not a Rungwise project file/)
+    expect(() => project.saveAs(path)).toThrow(/This is not a Rungwise project file/)
     expect(everything()).toEqual(before)
     project.close()
   })
@@ -467,8 +467,8 @@ describe('saving', () => {
 
   it('says so when the folder is not there', () => {
     const project = filled(createInMemoryProject(clock))
-    expect(() => project.saveAs(join(folder, 'nowhere', 'noise.rungwise'))).toThrow(/there is no such folder/)
-    expect(() => createProjectFile(join(folder, 'nowhere', 'noise.rungwise'), clock)).toThrow(/there is no such folder/)
+    expect(() => project.saveAs(join(folder, 'nowhere', 'noise.rungwise'))).toThrow(/There is no such folder/)
+    expect(() => createProjectFile(join(folder, 'nowhere', 'noise.rungwise'), clock)).toThrow(/There is no such folder/)
     project.close()
   })
 

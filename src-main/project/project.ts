@@ -202,7 +202,7 @@ export class Project {
   /** @throws InputError once anything was fitted. */
   changeRules(rules: Rules): void {
     if (this.hasFits) {
-      throw new InputError('the rules stand since the first candidate was fitted', {
+      throw new InputError('The rules stand since the first candidate was fitted.', {
         where: 'rules',
         remedy: 'To judge by other rules, start a new study; this one keeps what was fixed before its results.'
       })
@@ -319,7 +319,7 @@ export class Project {
   verifyContent(): void {
     if (this.isEmpty) return
     if (this.#isReadable() && dataDigest(this.data()) === this.data().digest) return
-    throw new InputError('what this project file holds was altered by another program and cannot be read', {
+    throw new InputError('What this project file holds was altered by another program and cannot be read.', {
       where: this.file,
       remedy: 'Open a copy of it from before.'
     })
@@ -347,7 +347,7 @@ export class Project {
   #requireStudy(): StudyRow {
     const row = this.#studyRow()
     if (row === undefined) {
-      throw new InputError('this project file holds no study yet', {
+      throw new InputError('This project file holds no study yet.', {
         where: this.file,
         remedy: 'Compare a plan with it as its project file, or open another one.'
       })

@@ -14,7 +14,8 @@ export class InputError extends Error {
   constructor(what: string, place: { where?: string | null; remedy?: string | null } = {}) {
     const where = place.where ?? null
     const remedy = place.remedy ?? null
-    super([where === null ? what : `${where}: ${what}`, remedy].filter((part) => part !== null).join(' '))
+    const ended = remedy === null || /[.!?]$/.test(what) ? what : `${what}.`
+    super([where === null ? ended : `${where}: ${ended}`, remedy].filter((part) => part !== null).join(' '))
     this.name = 'InputError'
     this.what = what
     this.where = where

@@ -26,7 +26,7 @@ describe('the words after rungwise', () => {
     [['--hlep'], 'Did you mean "--help"?'],
     [['compare', 'p.yaml', '--jsno', 'r.json'], 'Did you mean "--json"?'],
     [['compare', 'p.yaml', '--projet=s'], 'Did you mean "--project"?'],
-    [['open', '--json', 'r.json'], 'there is no option --json'],
+    [['open', '--json', 'r.json'], 'There is no option "--json".'],
     [['compare'], 'compare needs a plan file'],
     [['compare', 'a.yaml', 'b.yaml'], 'takes one file, and 2 were given'],
     [['open', 'a', 'b'], 'takes one file, and 2 were given'],

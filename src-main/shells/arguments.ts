@@ -62,9 +62,9 @@ function readCompare(words: readonly string[]): Command {
   const { files, values, asked } = sortWords(words, optionsOf.compare, ['--project', '--json'])
   if (asked !== null) return { do: asked }
   const plan = onlyFile(files, 'compare')
-  if (plan === null) throw new InputError('compare needs a plan file', { remedy: 'Write: rungwise compare PLAN.yaml' })
+  if (plan === null) throw new InputError('compare needs a plan file.', { remedy: 'Write: rungwise compare PLAN.yaml' })
   const project = values.get('--project') ?? null
-  if (project === '-') throw new InputError('--project needs a file; a project cannot go to standard output')
+  if (project === '-') throw new InputError('--project needs a file; a project cannot go to standard output.')
   return { do: 'compare', plan, project, json: values.get('--json') ?? null }
 }
 
@@ -106,18 +106,18 @@ function sortWords(words: readonly string[], known: readonly string[], withValue
 
 function takeValue(values: Map<string, string>, option: string, value: string | undefined): void {
   if (value === undefined || value === '' || (value.startsWith('-') && value !== '-')) {
-    throw new InputError(`${option} needs a file name after it`)
+    throw new InputError(`${option} needs a file name after it.`)
   }
-  if (values.has(option)) throw new InputError(`${option} is given twice`)
+  if (values.has(option)) throw new InputError(`${option} is given twice.`)
   values.set(option, value)
 }
 
 function onlyFile(files: string[], command: string): string | null {
-  if (files.length > 1) throw new InputError(`${command} takes one file, and ${files.length} were given: ${files.join(', ')}`)
-  if (files[0] === '') throw new InputError(`${command} was given an empty file name`)
+  if (files.length > 1) throw new InputError(`${command} takes one file, and ${files.length} were given: ${files.join(', ')}.`)
+  if (files[0] === '') throw new InputError(`${command} was given an empty file name.`)
   return files[0] ?? null
 }
 
 function unknownWord(kind: 'option' | 'command', word: string, known: readonly string[]): InputError {
-  return new InputError(`there is no ${kind} ${word}`, { remedy: didYouMean(word, known, `${kind}s`) })
+  return new InputError(`There is no ${kind} "${word}".`, { remedy: didYouMean(word, known, `${kind}s`) })
 }

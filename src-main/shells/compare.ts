@@ -63,8 +63,8 @@ async function resolvePaths(words: CompareWords, folder: string): Promise<Compar
   const project = words.project === null ? null : resolve(folder, words.project)
   const json = words.json === null || words.json === '-' ? words.json : resolve(folder, words.json)
   const written = [project, json].filter((path) => path !== null && path !== '-')
-  if (written.includes(plan)) throw new InputError('the plan would be written over', { where: plan, remedy: 'Name another file.' })
-  if (project !== null && project === json) throw new InputError('--project and --json name the same file', { where: project })
+  if (written.includes(plan)) throw new InputError('The plan would be written over.', { where: plan, remedy: 'Name another file.' })
+  if (project !== null && project === json) throw new InputError('--project and --json name the same file.', { where: project })
   for (const path of written) await assertWritablePlace(path!)
   return { plan, project, json }
 }

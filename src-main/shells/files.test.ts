@@ -28,16 +28,16 @@ describe('files of the user', () => {
 
   test('a file that is not there, or is a folder, is bad input with its path', async () => {
     await expect(readUserFile(join(folder, 'none.yaml'))).rejects.toThrow(
-      new InputError('there is no such file', { where: join(folder, 'none.yaml') })
+      new InputError('There is no such file.', { where: join(folder, 'none.yaml') })
     )
-    await expect(readUserFile(folder)).rejects.toThrow('this is a folder')
+    await expect(readUserFile(folder)).rejects.toThrow('This is a folder')
   })
 
   test('a place that cannot be written to is refused beforehand', async () => {
     writeFileSync(join(folder, 'file'), '')
     await expect(assertWritablePlace(join(folder, 'none', 'r.json'))).rejects.toThrow('does not exist')
-    await expect(assertWritablePlace(join(folder, 'file', 'r.json'))).rejects.toThrow('this is a file')
-    await expect(assertWritablePlace(folder)).rejects.toThrow('this is a folder')
+    await expect(assertWritablePlace(join(folder, 'file', 'r.json'))).rejects.toThrow('This is a file')
+    await expect(assertWritablePlace(folder)).rejects.toThrow('This is a folder')
     await expect(assertWritablePlace(join(folder, 'r.json'))).resolves.toBeUndefined()
   })
 })

@@ -41,17 +41,17 @@ export async function assertFile(path: string): Promise<void> {
   const found = await stat(path).catch((error: unknown) => {
     throw asInputError(error, path)
   })
-  if (found.isDirectory()) throw new InputError('this is a folder, not a file', { where: path })
+  if (found.isDirectory()) throw new InputError('This is a folder, not a file.', { where: path })
 }
 
 /** @throws InputError when a file could not be written at `path`: its folder is missing, or a folder stands in its place. */
 export async function assertWritablePlace(path: string): Promise<void> {
   const folder = dirname(path)
   const place = await stat(folder).catch(() => null)
-  if (place === null) throw new InputError('the folder to write to does not exist', { where: folder, remedy: 'Make it first.' })
-  if (!place.isDirectory()) throw new InputError('this is a file, and a folder is needed to write into', { where: folder })
+  if (place === null) throw new InputError('The folder to write to does not exist.', { where: folder, remedy: 'Make it first.' })
+  if (!place.isDirectory()) throw new InputError('This is a file, and a folder is needed to write into.', { where: folder })
   const there = await stat(path).catch(() => null)
-  if (there?.isDirectory()) throw new InputError('this is a folder, and a file is to be written', { where: path })
+  if (there?.isDirectory()) throw new InputError('This is a folder, and a file is to be written.', { where: path })
 }
 
 /** Writes beside `path` first and then takes its name, so that no reader ever sees half a file. */
@@ -67,14 +67,14 @@ export async function writeWhole(path: string, text: string): Promise<void> {
 }
 
 const causes: Readonly<Record<string, string>> = {
-  ENOENT: 'there is no such file',
-  ENOTDIR: 'there is no such file',
-  EISDIR: 'this is a folder, not a file',
-  EACCES: 'permission is denied',
-  EPERM: 'permission is denied',
-  EROFS: 'the disk is read-only',
-  ENOSPC: 'the disk is full',
-  ENAMETOOLONG: 'the name is too long'
+  ENOENT: 'There is no such file.',
+  ENOTDIR: 'There is no such file.',
+  EISDIR: 'This is a folder, not a file.',
+  EACCES: 'Permission is denied.',
+  EPERM: 'Permission is denied.',
+  EROFS: 'The disk is read-only.',
+  ENOSPC: 'The disk is full.',
+  ENAMETOOLONG: 'The name is too long.'
 }
 
 /** A refusal of the file system as bad input; anything else comes back as it is. */

@@ -33,7 +33,7 @@ describe('npx rungwise', () => {
     const { status, stdout, stderr } = await rungwise(['compare', congeneric, '--jsn', '-'], { node: machineNode() })
     expect({ status, stdout }).toEqual({ status: 2, stdout: '' })
     expect(stderr).toBe(
-      'there is no option --jsn Did you mean "--json"? The options are "--project", "--json", "--help" and "--version".\n'
+      'There is no option "--jsn". Did you mean "--json"? The options are "--project", "--json", "--help" and "--version".\n'
     )
   })
 
@@ -41,7 +41,7 @@ describe('npx rungwise', () => {
     for (const command of ['compare', 'open']) {
       const { status, stderr } = await rungwise([command, 'nowhere.yaml'], { folder: folder.path })
       expect({ command, status }).toEqual({ command, status: 2 })
-      expect(stderr).toBe(`${join(folder.path, 'nowhere.yaml')}: there is no such file\n`)
+      expect(stderr).toBe(`${join(folder.path, 'nowhere.yaml')}: There is no such file.\n`)
     }
   })
 })

@@ -46,7 +46,7 @@ export default defineConfig({
   renderer: {
     root: resolve(root, 'src-renderer'),
     base: './',
-    plugins: [svelte({ configFile: resolve(root, 'src-renderer/svelte.config.js') })],
+    plugins: [svelte({ configFile: false })],
     build: {
       outDir: resolve(root, 'out/renderer'),
       target: 'chrome114',

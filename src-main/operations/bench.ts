@@ -1,7 +1,8 @@
 /**
  * What the operations work on: the open project and the running work of one workbench.
  */
-import type { Clock, Project } from '../project/project.ts'
+import type { Project } from '../project/project.ts'
+import type { Clock } from '../project/records.ts'
 import { InputError } from '../study/input-error.ts'
 import type { Crew } from '../workers/jobs.ts'
 import type { StudyView, WorkEvent } from './contract.ts'

@@ -3,7 +3,8 @@
  */
 import { existsSync, rmSync } from 'node:fs'
 import { canonicalJson } from '../project/canonical-json.ts'
-import { type Clock, createInMemoryProject, createProjectFile, openProjectFile, type Project } from '../project/project.ts'
+import { createInMemoryProject, createProjectFile, openProjectFile, type Project } from '../project/project.ts'
+import type { Clock } from '../project/records.ts'
 import { InputError } from '../study/input-error.ts'
 import type { StudyResult } from '../study/result.ts'
 import type { Candidate, DataSet, LadderPlan, Plan } from '../study/study.ts'

@@ -26,35 +26,9 @@ import { canonicalJson, digestOf } from './canonical-json.ts'
 import { hasData, readData, writeData } from './data-store.ts'
 import { closeDatabase, refusedBySystem } from './database.ts'
 import { copyInto, createFile, createInMemory, openFile } from './project-file.ts'
+import type { Clock, Decision, RecordedFit, RecordedRelation } from './records.ts'
 import { sentences } from './sentences.ts'
 import { appendTrail, readTrail, type TrailBreak, type TrailEvent, type TrailRow, verifyTrail } from './trail.ts'
-
-/** Where the time in the trail comes from. */
-export type Clock = () => Date
-
-export interface RecordedFit {
-  /** What the outcome is found by again: covers model, data, settings and program version. */
-  digest: string
-  candidate: string
-  settings: Readonly<Record<string, unknown>>
-  version: string
-  outcome: FitOutcome
-}
-
-export interface RecordedRelation {
-  digest: string
-  /** The candidates' names where they are known. */
-  restricted: string | null
-  general: string | null
-  version: string
-  outcome: RelationOutcome
-}
-
-export interface Decision {
-  ladder: string
-  rung: string
-  reason: string
-}
 
 interface StudyRow {
   plan: string

@@ -3,7 +3,7 @@
  */
 import { cellWords, listed } from '../statistics/model/cell-words.ts'
 import { type ResolvedCandidate, resolveCandidate } from './candidate-model.ts'
-import type { Candidate, Change, EqualSet, Release } from './study.ts'
+import type { Candidate, CellName, Change, EqualSet, Release } from './study.ts'
 
 /** What a candidate is, in one sentence: its factors, or what differs from its parent. */
 export function candidateSentence(candidate: Candidate): string {
@@ -46,63 +46,79 @@ export function changeWords(change: Change): string {
       return `${cellWords(change.cell.part, change.cell.of, change.group)} is free`
     case 'fix':
       return `${cellWords(change.cell.part, change.cell.of, change.group)} is fixed at ${change.at}`
-    case 'equal': {
-      const cells = change.cells.map((cell) => cellWords(cell.part, cell.of))
-      return `${listed(cells, cells.length)} are equal${change.group === null ? '' : ` in ${change.group}`}`
-    }
+    case 'equal':
+      return `${cellsWords(change.cells)} are equal${change.group === null ? '' : ` in ${change.group}`}`
   }
 }
 
-/** What the upper rung adds to the lower, in words; `constraints` is the difference in df. */
+/** "the loadings of a and b on F" where only the first name differs; else one by one. */
+function cellsWords(cells: readonly CellName[]): string {
+  const [first] = cells
+  const alike = first !== undefined && cells.every((cell) => cell.part === first.part && cell.of[1] === first.of[1])
+  if (!alike || first.part === 'residual covariance' || first.part === 'factor covariance') {
+    const words = cells.map((cell) => cellWords(cell.part, cell.of))
+    return listed(words, words.length)
+  }
+  const names = cells.map((cell) => cell.of[0]!)
+  const many = first.part.replace(/variance$/, 'variances').replace(/(loading|intercept|mean|regression)$/, '$1s')
+  return `the ${many} of ${listed(names, names.length)}${first.of[1] === undefined ? '' : ` on ${first.of[1]}`}`
+}
+
+/** What the upper rung adds to the lower, in words; `constraints` is the difference in df where it is known. */
 export function addsWords(lower: string, upper: string, family: readonly Candidate[], constraints: number | null): string {
   const from = resolveCandidate(lower, family)
   const to = resolveCandidate(upper, family)
-  const own =
-    derivedWords(lower, upper, family) ?? undoneWords(lower, upper, family) ?? equalityWords(from, to) ?? factorWords(from, to)
-  if (own !== null) return own
+  const parts = sameContent(from.factors, to.factors)
+    ? [...scaleWords(from, to), ...equalityWords(from, to), ...changedWords(from.changes, to.changes)]
+    : [factorWords(from, to)]
+  if (parts.length > 0) return parts.join('; ')
   if (constraints === null || constraints <= 0) return 'another candidate'
   return constraints === 1 ? 'one constraint' : `${constraints} constraints`
 }
 
-/** Upper comes from lower by one derivation or more: its clauses. */
-function derivedWords(lower: string, upper: string, family: readonly Candidate[]): string | null {
-  const parts: string[][] = []
-  for (let at = family.find((c) => c.name === upper); at !== undefined; at = family.find((c) => c.name === at?.from)) {
-    if (at.name === lower) return parts.length === 0 ? null : parts.reverse().flat().join('; ')
-    if (at.factors !== null) return null
-    parts.push(ownParts(at))
-  }
-  return null
+function sameContent(a: unknown, b: unknown): boolean {
+  return JSON.stringify(a) === JSON.stringify(b)
 }
 
-/** Lower comes from upper by changes alone: each is undone. */
-function undoneWords(lower: string, upper: string, family: readonly Candidate[]): string | null {
-  const at = family.find((c) => c.name === lower)
-  if (at === undefined || at.from !== upper || at.change.length === 0 || at.except.length > 0 || at.equalAcrossGroups !== null)
-    return null
-  const words = at.change.map((change) =>
-    change.do === 'free' ? `without ${cellWords(change.cell.part, change.cell.of, change.group)}` : `not: ${changeWords(change)}`
-  )
-  return words.join('; ')
+/** Items of `list` that `other` does not hold. */
+function notIn<T>(list: readonly T[], other: readonly T[]): T[] {
+  return list.filter((item) => !other.some((known) => sameContent(item, known)))
 }
 
-/** The same model with more held equal across groups, or fewer exceptions. */
-function equalityWords(from: ResolvedCandidate, to: ResolvedCandidate): string | null {
-  if (JSON.stringify([from.factors, from.changes, from.across]) !== JSON.stringify([to.factors, to.changes, to.across])) return null
-  const added = to.equal.filter((set) => !from.equal.includes(set))
-  const kept = from.except.filter((r) => !to.except.some((other) => JSON.stringify(other) === JSON.stringify(r)))
-  const exceptions = to.except.length > 0 ? ` except ${listed(to.except.map(releaseWords), to.except.length)}` : ''
-  if (added.length > 0) return `${acrossWords(to.across, added)}${exceptions}`
-  if (kept.length > 0) return `no longer released: ${listed(kept.map(releaseWords), kept.length)}`
-  return null
+function scaleWords(from: ResolvedCandidate, to: ResolvedCandidate): string[] {
+  return from.factorCovariances === to.factorCovariances ? [] : [`factor covariances ${to.factorCovariances}`]
 }
 
-function factorWords(from: ResolvedCandidate, to: ResolvedCandidate): string | null {
-  if (JSON.stringify(from.factors) === JSON.stringify(to.factors)) return null
+/** More held equal across groups, fewer exceptions, or the reverse. */
+function equalityWords(from: ResolvedCandidate, to: ResolvedCandidate): string[] {
+  const parts: string[] = []
+  if (from.across !== to.across) parts.push(to.across === null ? 'groups pooled' : `by ${to.across}`)
+  const more = notIn(to.equal, from.equal)
+  const fewer = notIn(from.equal, to.equal)
+  const released = notIn(to.except, from.except).map(releaseWords)
+  const kept = notIn(from.except, to.except).map(releaseWords)
+  if (more.length > 0) parts.push(`equal ${listed(more, more.length)} across ${to.across ?? 'groups'}`)
+  if (fewer.length > 0) parts.push(`${listed(fewer, fewer.length)} no longer equal`)
+  if (released.length > 0) parts.push(`${more.length > 0 ? 'except' : 'released:'} ${listed(released, released.length)}`)
+  if (kept.length > 0) parts.push(`no longer released: ${listed(kept, kept.length)}`)
+  return parts
+}
+
+/** Changes that upper makes and lower does not; those of lower alone are undone. */
+function changedWords(lower: readonly Change[], upper: readonly Change[]): string[] {
+  const undone = notIn(lower, upper).map((change) => {
+    if (change.do === 'free') return `without ${cellWords(change.cell.part, change.cell.of, change.group)}`
+    if (change.do === 'fix') return `${cellWords(change.cell.part, change.cell.of, change.group)} is no longer fixed`
+    return changeWords(change).replace(/ are equal/, ' are no longer equal')
+  })
+  return [...undone, ...notIn(upper, lower).map(changeWords)]
+}
+
+function factorWords(from: ResolvedCandidate, to: ResolvedCandidate): string {
   const before = from.factors.map((f) => f.name)
   const after = to.factors.map((f) => f.name)
-  const gone = before.filter((name) => !after.includes(name))
-  const come = after.filter((name) => !before.includes(name))
+  const gone = notIn(before, after)
+  const come = notIn(after, before)
   if (gone.length > 0 && come.length > 0) return `${listed(come)} in place of ${listed(gone)}`
   if (gone.length > 0) return `without ${listed(gone)}`
   if (come.length > 0) return `with ${listed(come)}`

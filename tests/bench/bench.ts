@@ -117,17 +117,18 @@ function shares(p: number, m: number): Timing[] {
   const start = startingValues(model, moments)
   const gradient = new Float64Array(model.parameters)
   const curvature = new Float64Array(model.parameters ** 2)
+  const derivatives = (...into: [Float64Array, Float64Array?]) => {
+    objective.evaluate(start)
+    objective.derive(...into)
+  }
   const iterations = fitModel(cells, moments, settings).fit.convergence.iterations
   return [
     time(`  its parts: compile`, 50, null, () => compileModel(cells)),
     time(`  its parts: starting values`, 50, null, () => startingValues(model, moments)),
     time(`  its parts: F once`, 50, null, () => objective.evaluate(start)),
-    time(`  its parts: F and gradient once`, 50, null, () => (objective.evaluate(start), objective.derive(gradient))),
-    time(
-      `  its parts: F, gradient and information once (${iterations} iterations a fit)`,
-      50,
-      null,
-      () => (objective.evaluate(start), objective.derive(gradient, curvature))
+    time(`  its parts: F and gradient once`, 50, null, () => derivatives(gradient)),
+    time(`  its parts: F, gradient and information once (${iterations} iterations a fit)`, 50, null, () =>
+      derivatives(gradient, curvature)
     )
   ]
 }

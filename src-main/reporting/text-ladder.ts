@@ -7,7 +7,7 @@
 import type { CandidateResult, DifferenceResult, LadderResult, StepResult, StudyResult } from '../study/result.ts'
 import type { Caution, Estimation, Rules } from '../study/study.ts'
 import { counted, criterion, index, noValue, pIs, pValue, signedCriterion, signedIndex, statistic } from './numbers.ts'
-import { flow, plainName, wrap } from './text-lines.ts'
+import { flow, plainName, wrap, wrapSentence } from './text-lines.ts'
 
 export interface TextLadderInput {
   result: StudyResult
@@ -159,7 +159,7 @@ function stepLines(step: StepResult, width: number): string[] {
     ...hanging('', verdictText(step), width, indent),
     ...(step.difference === null ? [] : differenceLines(step.difference, width, indent)),
     ...flow(deltaGroups(step), width, indent),
-    ...wrap(plainName(step.because), width, indent),
+    ...wrapSentence(plainName(step.because), width, indent),
     `${margin}${upright}`
   ]
 }

@@ -48,6 +48,12 @@ export function wrap(text: string, width: number, indent = ''): string[] {
   return lines.map((each) => indent + each)
 }
 
+/** `wrap` for a sentence with numbers: "p < .001" and "Delta T = 5" are never broken at their sign. */
+export function wrapSentence(text: string, width: number, indent = ''): string[] {
+  const glued = text.replace(/ ([<>=]) /g, '\u00a0$1\u00a0')
+  return wrap(glued, width, indent).map((line) => line.replaceAll('\u00a0', ' '))
+}
+
 /** Puts groups of words on as few lines as they need, three spaces apart; a group is broken only when it is wider than a line. */
 export function flow(groups: readonly string[], width: number, indent = ''): string[] {
   const lines: string[] = []

@@ -3,11 +3,19 @@ import { type ChildProcess, spawn } from 'node:child_process'
 import { existsSync, mkdtempSync, rmSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { delimiter, join } from 'node:path'
+import { findRuntime } from '../../src-main/shells/electron-runtime.ts'
 import type { Surroundings } from '../../src-main/shells/surroundings.ts'
 import type { StudyResult } from '../../src-main/study/result.ts'
 
 export const root = join(import.meta.dirname, '..', '..')
 export const launcher = join(root, 'bin', 'rungwise.cjs')
+
+const runtime = findRuntime(root, process.env)
+const hasDisplay = process.platform !== 'linux' || Boolean(process.env['DISPLAY']) || Boolean(process.env['WAYLAND_DISPLAY'])
+
+/** Electron's executable where a desktop window can be tested, else null, and then why. */
+export const desktop = hasDisplay ? runtime : null
+export const whyNoDesktop = runtime === null ? "Electron's runtime is not here" : 'there is no display'
 
 export interface Ended {
   status: number | null

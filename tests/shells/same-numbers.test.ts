@@ -9,9 +9,9 @@ import { _electron, type ElectronApplication } from 'playwright-core'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import type { Answer, Client, OperationName, Operations, WorkEvent } from '../../src-main/operations/contract.ts'
 import { statistic } from '../../src-main/reporting/numbers.ts'
-import { findRuntime, runtimeArguments } from '../../src-main/shells/electron-runtime.ts'
+import { runtimeArguments } from '../../src-main/shells/electron-runtime.ts'
 import type { StudyResult } from '../../src-main/study/result.ts'
-import { launcher, machineNode, resultOf, root } from './program.ts'
+import { desktop, launcher, machineNode, resultOf, root, whyNoDesktop } from './program.ts'
 
 /** What the tests touch inside the page. */
 interface Page {
@@ -112,16 +112,14 @@ function differences(a: unknown, b: unknown, path = 'result'): string[] {
   return [...keys].flatMap((key) => differences(left[key], right[key], `${path}.${key}`))
 }
 
-const runtime = findRuntime(root, process.env)
-const canShow = process.platform !== 'linux' || Boolean(process.env['DISPLAY'])
-if (runtime === null || !canShow) {
-  const why = runtime === null ? "Electron's runtime is not here" : 'there is no display'
-  process.stderr.write(`The tests of the desktop window did not run: ${why}.\n`)
+if (desktop === null) {
+  process.stderr.write(`The tests of the desktop window did not run: ${whyNoDesktop}.\n`)
 } else {
+  const executablePath = desktop
   describe('the desktop window', () => {
     let app: ElectronApplication
     beforeAll(async () => {
-      app = await _electron.launch({ executablePath: runtime, args: ['--disable-gpu', ...runtimeArguments('.', null)], cwd: root })
+      app = await _electron.launch({ executablePath, args: ['--disable-gpu', ...runtimeArguments('.', null)], cwd: root })
     })
     afterAll(() => app.close())
 

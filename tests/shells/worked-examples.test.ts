@@ -1,0 +1,117 @@
+/**
+ * Worked examples through the command line, from a plan file to the printed JSON, against values from outside:
+ * published figures where there are any, else those of fixtures/reference (whose files name the data's source).
+ */
+import { join } from 'node:path'
+import { describe, expect, test } from 'vitest'
+import type { StudyResult } from '../../src-main/study/result.ts'
+import { readExample } from '../reference/examples.ts'
+import { root, rungwise } from './program.ts'
+
+async function compare(plan: string): Promise<StudyResult> {
+  const { status, stdout, stderr } = await rungwise(['compare', join(root, 'fixtures', plan, 'plan.yaml'), '--json', '-'])
+  expect(stderr).toBe('')
+  expect(status).toBe(0)
+  return JSON.parse(stdout) as StudyResult
+}
+
+const candidate = (result: StudyResult, name: string) => result.candidates.find((c) => c.name === name)!
+const step = (result: StudyResult, ladder: string, to: string) =>
+  result.ladders.find((l) => l.name === ladder)!.steps.find((s) => s.to === to)!
+
+describe('four vocabulary tests, congeneric and parallel', () => {
+  /** Published: Jöreskog (1971), Psychometrika 36, 109-133, on data of Lord (1957); T and df typed from memory, T = (n - 1) F. */
+  const published = {
+    'two factors': [0.7, 1],
+    'two factors, parallel pairs': [1.93, 5],
+    'one factor': [36.21, 2],
+    'one factor, parallel pairs': [37.33, 6]
+  }
+
+  test('give the published T on the published df', async () => {
+    const result = await compare('congeneric')
+    for (const [name, [T, df]] of Object.entries(published)) {
+      expect(Number(candidate(result, name).T!.toFixed(2)), name).toBe(T)
+      expect(candidate(result, name).df, name).toBe(df)
+    }
+  })
+
+  test('give every figure of the recomputed example', async () => {
+    interface Figures {
+      T: number
+      p: number
+      cfi: number
+      tli: number
+      srmr: number
+      logLikelihood: number
+      rmsea: { estimate: number; lower: number; upper: number; closeFitP: number }
+      withoutMeans: { parameters: number; aic: number; bic: number; adjustedBic: number }
+      estimates: Record<string, number>
+      standardErrors: Record<string, number>
+    }
+    const { expected, tolerance } = readExample<{ expected: Record<string, Figures>; tolerance: Record<string, number> }>(
+      'congeneric-tests.json'
+    )
+    const result = await compare('congeneric')
+    for (const [name, figures] of Object.entries(expected)) {
+      const own = candidate(result, name)
+      expect(Math.abs(own.T! - figures.T)).toBeLessThan(tolerance['T']!)
+      for (const index of ['p', 'cfi', 'tli', 'srmr'] as const)
+        expect(Math.abs(own[index]! - figures[index]), index).toBeLessThan(1e-5)
+      for (const part of ['estimate', 'lower', 'upper', 'closeFitP'] as const)
+        expect(Math.abs(own.rmsea[part]! - figures.rmsea[part]), part).toBeLessThan(1e-5)
+      for (const index of ['aic', 'bic', 'adjustedBic'] as const)
+        expect(Math.abs(own[index]! - figures.withoutMeans[index]), index).toBeLessThan(1e-3)
+      expect(Math.abs(own.logLikelihood! - figures.logLikelihood)).toBeLessThan(1e-3)
+      expect(own.parameters).toBe(figures.withoutMeans.parameters)
+      for (const [parameter, value] of Object.entries(figures.estimates)) {
+        const estimate = own.estimates.find(
+          (e) => e.free && Math.abs(e.estimate! - value) < tolerance['estimates']! * Math.max(1, Math.abs(value))
+        )
+        expect(estimate, `${name}: ${parameter}`).toBeDefined()
+        expect(
+          Math.abs(estimate!.standardError! - figures.standardErrors[parameter]!),
+          `${name}: error of ${parameter}`
+        ).toBeLessThan(1e-4 * 3)
+      }
+    }
+  })
+
+  test('stand on two factors with parallel pairs: one factor is a step too far', async () => {
+    const result = await compare('congeneric')
+    const [ladder] = result.ladders
+    expect(ladder!.standHere).toBe('two factors, parallel pairs')
+    expect(ladder!.steps.map((s) => [s.relation, s.proof, s.verdict])).toEqual([
+      ['nested', 'constraints', 'holds'],
+      ['nested', 'constraints', 'does not hold']
+    ])
+    // 37.33 - 1.93 on one degree of freedom, from the published values.
+    expect(step(result, ladder!.name, 'one factor, parallel pairs').difference!.T).toBeCloseTo(35.4, 1)
+  })
+})
+
+const levels = ['configural', 'equal_loadings', 'equal_loadings_intercepts', 'equal_loadings_intercepts_residual_variances']
+
+for (const [folder, file] of [
+  ['iris', '01a_iris_invariance.json'],
+  ['crabs', '01c_crabs_species_by_sex_invariance.json'],
+  ['two-factors', '01d_simulated_two_factor_invariance.json']
+] as const) {
+  test(`the invariance ladder of ${folder} gives T, df and differences of ${file}`, async () => {
+    const result = await compare(folder)
+    const example = readExample(file)
+    const ladder = result.ladders.find((l) => l.rungs.length === 4)!
+    ladder.rungs.forEach((rung, i) => {
+      const expected = example.expected[levels[i]!]!
+      expect(candidate(result, rung).df).toBe(expected.df)
+      expect(Math.abs(candidate(result, rung).T! - expected.T)).toBeLessThan(1e-6 * (1 + expected.T))
+      expect(Math.abs(candidate(result, rung).cfi! - expected.cfi)).toBeLessThan(1e-6)
+      if (i === 0) return
+      const below = example.expected[levels[i - 1]!]!
+      const { difference, deltaCfi } = ladder.steps[i - 1]!
+      expect(Math.abs(difference!.T - (expected.T - below.T))).toBeLessThan(1e-5 * (1 + expected.T))
+      expect(difference!.df).toBe(expected.df - below.df)
+      expect(Math.abs(deltaCfi! - (expected.cfi - below.cfi))).toBeLessThan(2e-6)
+    })
+  })
+}

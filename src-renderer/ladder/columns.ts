@@ -5,7 +5,7 @@ import { bounded, fixed, precise, probability } from '../state/format.ts'
 export interface RungNumber {
   name: string
   text: string
-  /** A quieter addition: the degrees of freedom. */
+  /** A quieter addition, its space included: the degrees of freedom. */
   aside: string | null
   /** A second line: the interval. */
   under: string | null
@@ -21,7 +21,7 @@ export function rungNumbers(result: CandidateResult): RungNumber[] {
   const p = result.scaled?.p ?? result.p
   const interval = rmsea.lower === null || rmsea.upper === null ? null : `[${bounded(rmsea.lower)}, ${bounded(rmsea.upper)}]`
   return [
-    { name: 'T (df)', text: fixed(T, 2), aside: `(${result.df})`, under: null, title: precise(T) },
+    { name: 'T (df)', text: fixed(T, 2), aside: `\u00a0(${result.df})`, under: null, title: precise(T) },
     { name: 'p', text: probability(p), aside: null, under: null, title: precise(p) },
     { name: 'CFI', text: bounded(result.cfi), aside: null, under: null, title: precise(result.cfi) },
     { name: 'RMSEA', text: bounded(rmsea.estimate), aside: null, under: interval, title: precise(rmsea.estimate) },

@@ -6,7 +6,8 @@
  */
 
 const minus = '\u2212'
-const thinSpace = '\u2009'
+/** A sixth of an em; the font's own thin space is too thin to be seen. */
+const thinSpace = '\u2006'
 export const notApplicable = '\u2013'
 
 /** Fixed decimals with thin-space thousands from 10 000 up: 21 406.3, 141.77, −0.12. */

@@ -34,6 +34,8 @@ export class StudyStore {
   starting = $state(true)
 
   readonly #client: Client
+  /** Whether the user chose what is selected; until then it follows where one can stand. */
+  #chosen = false
 
   constructor(client: Client) {
     this.#client = client
@@ -85,6 +87,7 @@ export class StudyStore {
   }
 
   select(name: string): void {
+    this.#chosen = true
     this.selected = name
   }
 
@@ -99,8 +102,8 @@ export class StudyStore {
     this.view = view
     this.fault = null
     if (!view.ladders.some((ladder) => ladder.name === this.ladder)) this.ladder = view.ladders.at(-1)?.name ?? null
-    const kept = sameStudy && this.selected !== null && names.includes(this.selected)
-    if (!kept || this.selected === null) this.selected = this.#firstLook(view) ?? names[0] ?? null
+    this.#chosen &&= sameStudy && this.selected !== null && names.includes(this.selected)
+    if (!this.#chosen) this.selected = this.#firstLook(view) ?? names[0] ?? null
   }
 
   #firstLook(view: StudyView): string | null {

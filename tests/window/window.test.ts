@@ -1,0 +1,314 @@
+/**
+ * The window in a real Chromium, on the real loopback host: what a user does from the first look to a recorded decision.
+ *
+ * Where there is no browser these tests say so in one line; under CI=true that is a failure. Pictures are kept in artifacts/.
+ */
+import { mkdirSync } from 'node:fs'
+import { join } from 'node:path'
+import axe from 'axe-core'
+import type { Browser, Locator, Page } from 'playwright-core'
+import { afterAll, beforeAll, describe, expect, test } from 'vitest'
+import { bounded, fixed } from '../../src-renderer/state/format.ts'
+import { root } from '../shells/program.ts'
+import { findBrowser, launchBrowser } from './browser.ts'
+import { type Host, startHost } from './host.ts'
+
+const pictures = join(root, 'artifacts')
+const sampleData = join(root, 'fixtures', 'sample', 'first-visit.csv')
+const executable = findBrowser(process.env)
+
+if (executable === null) {
+  process.stderr.write('The tests of the window in a browser did not run: no Chromium was found; set CHROMIUM to its path.\n')
+  test('a browser is there where CI is true', () => {
+    expect(process.env['CI']).not.toBe('true')
+  })
+} else {
+  describe('the window in a browser', () => {
+    let browser: Browser
+    let host: Host
+    beforeAll(async () => {
+      mkdirSync(pictures, { recursive: true })
+      browser = await launchBrowser(executable)
+      host = await startHost()
+    })
+    afterAll(async () => {
+      await browser?.close()
+      await host?.stop()
+    })
+
+    describe('on the sample study', () => {
+      let page: Page
+      const faults: string[] = []
+      beforeAll(async () => {
+        page = await browser.newPage({ viewport: { width: 1600, height: 1000 }, colorScheme: 'light' })
+        watchFaults(page, faults)
+        await page.goto(host.link)
+        await page.getByTestId('stand-here').waitFor()
+      })
+      afterAll(() => page.close())
+
+      test('fits it at once and shows its ladder, top rung first, with the numbers of the program', async () => {
+        const view = (await host.ask('currentStudy', null))!
+        const ladder = view.result.ladders.at(-1)!
+        await expect.poll(() => rungNames(page)).toEqual([...ladder.rungs].reverse())
+        for (const name of ladder.rungs) {
+          const result = view.result.candidates.find((candidate) => candidate.name === name)!
+          const text = await textOf(page.locator(`[data-testid=rung][data-name="${name}"]`))
+          for (const shown of [fixed(result.T, 2), bounded(result.cfi), fixed(result.bic, 1)]) expect(text).toContain(shown)
+        }
+        expect(await standing(page)).toBe(ladder.standHere)
+        expect(await page.getByTestId('step').count()).toBe(ladder.steps.length)
+      })
+
+      test('says why on the focus of a verdict, and hides it again on Escape', async () => {
+        const view = (await host.ask('currentStudy', null))!
+        const verdict = page.getByTestId('verdict').first()
+        const because = page.getByText(view.result.ladders.at(-1)!.steps.at(-1)!.because)
+        expect(await because.isVisible()).toBe(false)
+        await verdict.focus()
+        await because.waitFor({ state: 'visible' })
+        await page.keyboard.press('Escape')
+        await because.waitFor({ state: 'hidden' })
+      })
+
+      test('has its pictures taken, light and dark', async () => {
+        await page.mouse.move(0, 0)
+        await page.screenshot({ path: join(pictures, 'window-light.png') })
+        await page.emulateMedia({ colorScheme: 'dark' })
+        expect(await seriousProblems(page)).toEqual([])
+        await page.screenshot({ path: join(pictures, 'window-dark.png') })
+        await page.emulateMedia({ colorScheme: 'light' })
+      })
+
+      test('has no serious fault of accessibility in any of its places', async () => {
+        expect(await seriousProblems(page)).toEqual([])
+        for (const tab of ['Fit', 'Cautions', 'Residuals', 'Table']) {
+          await page.getByRole('tab', { name: tab, exact: true }).click()
+          expect(await seriousProblems(page)).toEqual([])
+        }
+        for (const name of ['Open…', 'Import data…', 'Save…', 'Export…', /^Rules:/, 'New candidate', 'Derive', 'New ladder']) {
+          await page.getByRole('button', { name, ...(typeof name === 'string' ? { exact: true } : {}) }).click()
+          await page.getByRole('dialog').waitFor()
+          expect(await seriousProblems(page)).toEqual([])
+          await page.keyboard.press('Escape')
+          await page.getByRole('dialog').waitFor({ state: 'detached' })
+        }
+        await page.getByRole('tab', { name: 'Ladder', exact: true }).click()
+      })
+
+      test('derives a candidate by a sentence, fits it and sets it on a ladder', async () => {
+        await page.getByRole('tab', { name: 'Structure' }).click()
+        await candidate(page, 'Two factors').click()
+        await page.getByRole('button', { name: 'Derive', exact: true }).click()
+        const dialog = page.getByRole('dialog')
+        await dialog.getByTestId('candidate-name').fill('Two factors, jars with taps')
+        await dialog.getByLabel('First name').selectOption('jars')
+        await dialog.getByLabel('Second name').selectOption('taps')
+        await dialog.getByRole('button', { name: 'Add change' }).click()
+        await dialog.getByText('free the residual covariance of jars and taps').waitFor()
+        await expect.poll(() => textOf(dialog.getByTestId('check'))).toMatch(/25 df, identified/)
+        await dialog.getByRole('button', { name: 'Add candidate' }).click()
+        await dialog.waitFor({ state: 'detached' })
+
+        const added = candidate(page, 'Two factors, jars with taps')
+        expect(await added.getAttribute('data-state')).toBe('draft')
+        expect(await textOf(added)).toContain('added after results')
+        await page.getByRole('button', { name: 'Fit 1 draft' }).click()
+        await expect.poll(() => added.getAttribute('data-state')).toBe('fitted')
+
+        await page.getByRole('button', { name: 'Set it on a ladder…' }).click()
+        await page.getByRole('dialog').getByLabel('Name', { exact: true }).fill('Structure, once more')
+        await page.getByRole('dialog').getByRole('button', { name: 'Add ladder' }).click()
+        await expect
+          .poll(() => rungNames(page))
+          .toEqual([
+            'One factor',
+            'Two factors',
+            'Two factors, jars with taps',
+            'Three factors',
+            'Three factors, bags with driving'
+          ])
+        expect(await standing(page)).toBe('Three factors')
+      })
+
+      test('records a decision only with its reason, and pins it to the rung', async () => {
+        await page.locator('[data-testid=rung]').getByRole('button', { name: 'Three factors', exact: true }).click()
+        await page.getByRole('button', { name: 'Stand on this rung…' }).click()
+        await page.getByRole('button', { name: 'Record decision' }).click()
+        await page.getByRole('alert').getByText('A decision needs its reason').waitFor()
+        await page.getByLabel('Why stand on Three factors?').fill('The residual covariance adds nothing that could be named.')
+        await page.getByRole('button', { name: 'Record decision' }).click()
+        const rung = page.locator('[data-testid=rung][data-name="Three factors"]')
+        await rung.getByText('adds nothing that could be named').waitFor()
+        expect((await host.ask('currentStudy', null))?.decisions.at(-1)).toMatchObject({ rung: 'Three factors' })
+        await page.screenshot({ path: join(pictures, 'window-decision.png') })
+      })
+
+      test('tells the whole story in its trail, with the chain verified', async () => {
+        const { trail } = (await host.ask('currentStudy', null))!
+        await page.getByRole('button', { name: /^Trail/ }).click()
+        const region = page.getByRole('region', { name: 'Trail entries, newest first' })
+        expect(await region.getByRole('row').count()).toBe(trail.entries.length + 1)
+        expect(await textOf(page.getByRole('button', { name: /^Trail/ }))).toContain('chain verified')
+        expect(await seriousProblems(page)).toEqual([])
+        await page.getByRole('button', { name: /^Trail/ }).click()
+      })
+
+      test('stacks its places on a narrow screen and with text twice as large, without scrolling sideways', async () => {
+        for (const [width, size] of [
+          [390, '100%'],
+          [760, '100%'],
+          [1280, '200%']
+        ] as const) {
+          await page.setViewportSize({ width, height: 900 })
+          await page.evaluate(`document.documentElement.style.fontSize = '${size}'`)
+          const overflow = await page.evaluate('document.documentElement.scrollWidth - document.documentElement.clientWidth')
+          expect({ width, size, overflow }).toEqual({ width, size, overflow: 0 })
+          await page.screenshot({ path: join(pictures, `window-${width}.png`) })
+        }
+        await page.evaluate("document.documentElement.style.fontSize = ''")
+        await page.setViewportSize({ width: 1600, height: 1000 })
+      })
+
+      test('saw no fault, no warning and no request to another machine', () => {
+        expect(faults).toEqual([])
+      })
+    })
+
+    describe('on data of one’s own', () => {
+      let page: Page
+      const faults: string[] = []
+      beforeAll(async () => {
+        page = await browser.newPage({ viewport: { width: 1440, height: 900 }, colorScheme: 'light' })
+        watchFaults(page, faults)
+        await page.goto(host.link)
+        await page.getByRole('button', { name: 'Import data…' }).click()
+      })
+      afterAll(() => page.close())
+
+      test('says beside the field what is wrong with a file', async () => {
+        await page.getByLabel(/^Data file/).fill(join(root, 'fixtures', 'sample', 'not-there.csv'))
+        await page.getByRole('alert').waitFor()
+        expect(await textOf(page.getByRole('alert'))).toContain('not-there.csv')
+      })
+
+      test('imports a data file and shows what to do next', async () => {
+        const dialog = page.getByRole('dialog')
+        await dialog.getByLabel(/^Data file/).fill(sampleData)
+        await dialog.getByLabel('Name of the study').fill('My own study')
+        await dialog.getByLabel('Group column').selectOption('clinic')
+        await dialog.getByRole('button', { name: 'Choose all numeric' }).click()
+        await page.screenshot({ path: join(pictures, 'window-import.png') })
+        await dialog.getByRole('button', { name: 'Make the study' }).click()
+        await page.getByRole('heading', { name: 'My own study' }).waitFor()
+        await page.getByText('Start with a candidate').waitFor()
+        expect(await seriousProblems(page)).toEqual([])
+      })
+
+      test('writes a candidate into the grid with the keyboard alone, blocks copied and pasted', async () => {
+        await page.getByRole('button', { name: 'New candidate' }).first().click()
+        const dialog = page.getByRole('dialog')
+        await dialog.getByTestId('candidate-name').fill('Hand and life')
+        await dialog.getByRole('button', { name: 'Add factor' }).click()
+        await dialog.getByLabel('Name of factor 1').fill('Hand')
+        await dialog.getByLabel('Name of factor 2').fill('Life')
+        await gridCell(dialog, 0, 0).focus()
+        for (const key of ['Space', 'ArrowDown', 'Space', 'ArrowDown', 'Space', 'ArrowUp', 'ArrowUp'])
+          await page.keyboard.press(key)
+        for (const key of ['Shift+ArrowDown', 'Shift+ArrowDown', 'Control+c', 'ArrowDown']) await page.keyboard.press(key)
+        await expect.poll(() => gridText(dialog, 0)).toEqual(['free', 'free', 'free', '', '', '', '', '', ''])
+        await page.keyboard.press('Control+v')
+        for (const key of ['Home', 'ArrowRight', 'ArrowDown', 'ArrowDown', 'ArrowDown', 'Control+v']) await page.keyboard.press(key)
+        await expect.poll(() => gridText(dialog, 0)).toEqual(['free', 'free', 'free', 'free', 'free', 'free', '', '', ''])
+        expect(await gridText(dialog, 1)).toEqual(['', '', '', '', '', '', 'free', 'free', 'free'])
+        await expect.poll(() => textOf(dialog.getByTestId('check'))).toMatch(/26 df, identified/)
+        await gridCell(dialog, 4, 0).focus()
+        await page.keyboard.type('0,5')
+        await page.keyboard.press('Enter')
+        await expect.poll(() => textOf(dialog.getByTestId('check'))).toContain('decimal point')
+        await page.keyboard.press('ArrowUp')
+        await page.keyboard.type('free')
+        await page.keyboard.press('Enter')
+        await expect.poll(() => textOf(dialog.getByTestId('check'))).toMatch(/26 df, identified/)
+        expect(await seriousProblems(page)).toEqual([])
+        await page.screenshot({ path: join(pictures, 'window-grid.png') })
+        await dialog.getByRole('button', { name: 'Add candidate' }).click()
+        await dialog.waitFor({ state: 'detached' })
+        expect((await host.ask('currentStudy', null))?.candidates[0]?.candidate.factors).toEqual([
+          { name: 'Hand', measures: ['jars', 'bags', 'taps', 'tingling', 'numbness', 'coldness'] },
+          { name: 'Life', measures: ['driving', 'cooking', 'handshake'] }
+        ])
+      })
+
+      test('makes an invariance ladder of it and climbs it', async () => {
+        await page.getByRole('button', { name: 'New ladder' }).first().click()
+        const dialog = page.getByRole('dialog')
+        await dialog.getByLabel('Name', { exact: true }).fill('Between clinics')
+        await dialog.getByLabel('Invariance across clinic').check()
+        await dialog.getByRole('button', { name: 'Add ladder' }).click()
+        await dialog.waitFor({ state: 'detached' })
+        await page.getByRole('button', { name: /^Fit \d+ drafts$/ }).click()
+        await expect
+          .poll(async () => (await host.ask('currentStudy', null))?.candidates.every((one) => one.state === 'fitted'))
+          .toBe(true)
+        await expect.poll(() => page.getByTestId('step').count()).toBe(2)
+        expect(await textOf(page.getByRole('button', { name: /^Rules:/ }))).toContain('Rules fixed')
+      })
+
+      test('saw no fault, no warning and no request to another machine', () => {
+        expect(faults).toEqual([])
+      })
+    })
+  })
+}
+
+function rungNames(page: Page): Promise<(string | null)[]> {
+  return page.getByTestId('rung').evaluateAll((all) => all.map((rung) => rung.getAttribute('data-name')))
+}
+
+function standing(page: Page): Promise<string | null> {
+  return page
+    .locator('li', { has: page.getByTestId('stand-here') })
+    .getByTestId('rung')
+    .getAttribute('data-name')
+}
+
+/** The candidate of exactly this name in the list at the left. */
+function candidate(page: Page, name: string): Locator {
+  return page.getByTestId('candidate').filter({ has: page.getByText(name, { exact: true }) })
+}
+
+function gridCell(dialog: Locator, row: number, column: number): Locator {
+  return dialog.locator(`[data-place="${row}-${column}"]`)
+}
+
+/** A column of the grid as typed. */
+function gridText(dialog: Locator, column: number): Promise<string[]> {
+  return dialog.locator(`[data-place$="-${column}"] > span`).allTextContents()
+}
+
+/** What an element says, its line breaks and indentation as single spaces. */
+async function textOf(locator: Locator): Promise<string> {
+  return ((await locator.textContent()) ?? '').replace(/[ \n]+/g, ' ')
+}
+
+/** Violations of WCAG A and AA that hinder seriously, each with where it is. */
+async function seriousProblems(page: Page): Promise<string[]> {
+  await page.evaluate(axe.source)
+  const found = (await page.evaluate(
+    "axe.run({ runOnly: ['wcag2a', 'wcag2aa', 'wcag21a', 'wcag21aa', 'wcag22aa', 'best-practice'] })"
+  )) as axe.AxeResults
+  return found.violations
+    .filter(({ impact }) => impact === 'serious' || impact === 'critical')
+    .flatMap(({ id, nodes }) => nodes.map((node) => `${id}: ${node.target.join(' ')}: ${node.failureSummary ?? ''}`))
+}
+
+function watchFaults(page: Page, faults: string[]): void {
+  page.on('pageerror', (error) => faults.push(error.message))
+  page.on('console', (message) => {
+    if (['error', 'warning'].includes(message.type())) faults.push(message.text())
+  })
+  page.on('request', (request) => {
+    if (!/^(http:\/\/127\.0\.0\.1:|data:)/.test(request.url())) faults.push(`asked ${request.url()}`)
+  })
+}

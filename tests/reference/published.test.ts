@@ -31,8 +31,8 @@ interface Published {
 function momentsOf({ data }: Published): SampleMoments {
   const { indicators, n, covariance, correlation, sd } = data
   const p = indicators.length
-  const matrix = wholeMatrix(covariance ?? correlation!)
-  if (covariance === undefined) matrix.forEach((r, at) => (matrix[at] = r * sd![Math.floor(at / p)]! * sd![at % p]!))
+  const given = wholeMatrix(covariance ?? correlation!)
+  const matrix = covariance !== undefined ? given : given.map((r, at) => r * sd![Math.floor(at / p)]! * sd![at % p]!)
   return { indicators, groups: [{ name: null, n, covariance: matrix, mean: null }] }
 }
 

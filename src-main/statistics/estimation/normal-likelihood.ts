@@ -153,10 +153,11 @@ function groupWork(
   }
 }
 
-type CellColumns = Pick<GroupWork, 'u' | 'v' | 'c' | 's' | 'meanFactor'>
+/** Per free cell of a group: u, v, c, s and the factor whose mean weighs s (see the head of this file). */
+export type CellColumns = Pick<GroupWork, 'u' | 'v' | 'c' | 's' | 'meanFactor'>
 
 /** The columns of B that each free cell moves Sigma and mu along (see the head of this file). */
-function cellColumns(group: CompiledGroup, p: number, m: number, means: boolean): CellColumns {
+export function cellColumns(group: CompiledGroup, p: number, m: number, means: boolean): CellColumns {
   const count = group.free.length
   const out: CellColumns = {
     u: new Int32Array(count).fill(-1),

@@ -7,7 +7,7 @@
 import type { FitResult } from '../statistics/fit/fit-result.ts'
 import type { Caution, Origin } from './study.ts'
 
-export type { EstimateResult, FitResult, FitState, RmseaResult } from '../statistics/fit/fit-result.ts'
+export type { EstimateResult, FitResult, FitState } from '../statistics/fit/fit-result.ts'
 
 export interface CandidateResult extends FitResult {
   name: string

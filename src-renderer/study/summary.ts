@@ -18,6 +18,11 @@ export function estimationInWords({ estimation }: StudyView): string {
   return parts.join(', ')
 }
 
+/** The project file's name, or that there is none yet. */
+export function fileInWords({ file }: StudyView): string {
+  return file === null ? 'not saved' : `saved in ${file.split(/[/\\]/).at(-1) ?? file}`
+}
+
 /** "difference test, α = .05, Holm". */
 export function rulesInWords(rules: Rules): string {
   const test = [`α = ${bounded(rules.alpha).replace(/0$/, '')}`, ...(rules.adjust === 'holm' ? ['Holm'] : [])]

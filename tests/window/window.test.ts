@@ -73,6 +73,7 @@ if (executable === null) {
 
       test('has its pictures taken, light and dark', async () => {
         await page.mouse.move(0, 0)
+        await page.evaluate('document.activeElement.blur()')
         await page.screenshot({ path: join(pictures, 'window-light.png') })
         await page.emulateMedia({ colorScheme: 'dark' })
         expect(await seriousProblems(page)).toEqual([])
@@ -164,6 +165,12 @@ if (executable === null) {
           await page.evaluate(`document.documentElement.style.fontSize = '${size}'`)
           const overflow = await page.evaluate('document.documentElement.scrollWidth - document.documentElement.clientWidth')
           expect({ width, size, overflow }).toEqual({ width, size, overflow: 0 })
+          const [left, middle] = await Promise.all([
+            boxOf(page.getByTestId('candidate').first()),
+            boxOf(page.getByTestId('rung').first())
+          ])
+          expect(middle.y).toBeGreaterThan(left.y)
+          expect(middle.width).toBeGreaterThan(0.7 * width)
           await page.screenshot({ path: join(pictures, `window-${width}.png`) })
         }
         await page.evaluate("document.documentElement.style.fontSize = ''")
@@ -264,6 +271,12 @@ if (executable === null) {
 
 function rungNames(page: Page): Promise<(string | null)[]> {
   return page.getByTestId('rung').evaluateAll((all) => all.map((rung) => rung.getAttribute('data-name')))
+}
+
+async function boxOf(locator: Locator): Promise<{ y: number; width: number }> {
+  const box = await locator.boundingBox()
+  if (box === null) throw new Error('not shown')
+  return box
 }
 
 function standing(page: Page): Promise<string | null> {

@@ -31,13 +31,6 @@ export function signedBounded(value: number | null): string {
   return value > 0 && /[1-9]/.test(text) ? `+${text}` : text
 }
 
-/** A difference of unbounded values, with its sign. */
-export function signedFixed(value: number | null, decimals: number): string {
-  if (value === null) return notApplicable
-  const text = fixed(value, decimals)
-  return value > 0 && /[1-9]/.test(text) ? `+${text}` : text
-}
-
 /** A probability alone: .042, < .001, > .999. */
 export function probability(p: number | null): string {
   if (p === null) return notApplicable

@@ -9,7 +9,7 @@ import axe from 'axe-core'
 import type { Browser, Locator, Page } from 'playwright-core'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import { bounded, fixed } from '../../src-renderer/state/format.ts'
-import { root } from '../shells/program.ts'
+import { root, temporaryFolder } from '../shells/program.ts'
 import { findBrowser, launchBrowser } from './browser.ts'
 import { type Host, startHost } from './host.ts'
 
@@ -262,11 +262,39 @@ if (executable === null) {
         expect(await textOf(page.getByRole('button', { name: /^Rules:/ }))).toContain('Rules fixed')
       })
 
+      test('saves the study, opens another and finds everything again in the saved file', async () => {
+        const folder = temporaryFolder()
+        try {
+          const file = join(folder.path, 'mine.rungwise')
+          await fillAndPress(page, 'Save…', file, 'Save')
+          await page.getByText('saved in mine.rungwise').waitFor()
+          const before = (await host.ask('currentStudy', null))!
+          await fillAndPress(page, 'Open…', join(root, 'fixtures', 'sample', 'plan.yaml'), 'Open')
+          await page.getByRole('heading', { name: 'Hand therapy, first visit' }).waitFor()
+          await fillAndPress(page, 'Open…', file, 'Open')
+          await page.getByRole('heading', { name: 'My own study' }).waitFor()
+          await expect.poll(() => page.getByTestId('step').count()).toBe(2)
+          expect((await host.ask('currentStudy', null))?.result).toEqual(before.result)
+          await host.ask('openSample', null)
+        } finally {
+          folder.remove()
+        }
+      })
+
       test('saw no fault, no warning and no request to another machine', () => {
         expect(faults).toEqual([])
       })
     })
   })
+}
+
+/** Opens a dialog from the header, writes a path into it and presses its last button. */
+async function fillAndPress(page: Page, opener: string, path: string, action: string): Promise<void> {
+  await page.getByRole('button', { name: opener, exact: true }).click()
+  const dialog = page.getByRole('dialog')
+  await dialog.getByLabel(/^File/).fill(path)
+  await dialog.getByRole('button', { name: action, exact: true }).click()
+  await dialog.waitFor({ state: 'detached' })
 }
 
 function rungNames(page: Page): Promise<(string | null)[]> {

@@ -96,12 +96,75 @@ describe('the normal-theory discrepancy', () => {
     }
   })
 
+  for (const kind of ['complete', 'missing'] as const) {
+    it(`has the observed second derivatives that central differences of the gradient give, ${kind} data`, () => {
+      const { model, moments, gamma } = setting()
+      const objective = normalObjective(model, kind === 'complete' ? moments : withHoles(moments), 'normal')
+      const q = model.parameters
+      const curvature = new Float64Array(q * q)
+      objective.evaluate(gamma)
+      objective.derive(new Float64Array(q), curvature, 'observed')
+      const gradientAt = (k: number, shift: number) => {
+        const out = new Float64Array(q)
+        objective.evaluate(gamma.map((value, j) => (j === k ? value + shift : value)))
+        objective.derive(out)
+        return out
+      }
+      for (let k = 0; k < q; k++) {
+        const step = 1e-5
+        const [a, b, c, d] = [gradientAt(k, -2 * step), gradientAt(k, -step), gradientAt(k, step), gradientAt(k, 2 * step)]
+        for (let j = 0; j < q; j++) {
+          const numeric = (a[j]! - 8 * b[j]! + 8 * c[j]! - d[j]!) / (12 * step)
+          const own = curvature[Math.max(j, k) * q + Math.min(j, k)]!
+          expect(Math.abs(own - numeric), `${model.gammaLabels[k]} with ${model.gammaLabels[j]}`).toBeLessThan(
+            1e-7 * (1 + Math.abs(numeric))
+          )
+        }
+      }
+    })
+  }
+
+  it('has the gradient that central differences of F give with missing answers', () => {
+    const { model, moments, gamma } = setting()
+    const objective = normalObjective(model, withHoles(moments), 'normal')
+    const gradient = new Float64Array(model.parameters)
+    objective.evaluate(gamma)
+    objective.derive(gradient)
+    for (let k = 0; k < gamma.length; k++) {
+      const step = 1e-5
+      const at = (shift: number) => objective.evaluate(gamma.map((value, j) => (j === k ? value + shift : value)))
+      const numeric = (at(-2 * step) - 8 * at(-step) + 8 * at(step) - at(2 * step)) / (12 * step)
+      expect(Math.abs(gradient[k]! - numeric), model.gammaLabels[k]).toBeLessThan(1e-8 * (1 + Math.abs(numeric)))
+    }
+  })
+
   it('is not defined where the implied covariance matrix is not positive definite', () => {
     const { model, moments, gamma } = setting()
     const objective = normalObjective(model, moments, 'normal')
     expect(objective.evaluate(gamma.map((value, k) => (model.gammaLabels[k] === 'e0a' ? -50 : value)))).toBeNaN()
   })
 })
+
+/** Three patterns a group: complete, without the second and fifth indicator, the first three alone. */
+function withHoles(moments: SampleMoments): SampleMoments {
+  const kept = [
+    [0, 1, 2, 3, 4, 5],
+    [0, 2, 3, 5],
+    [0, 1, 2]
+  ]
+  const groups = moments.groups.map((group, g) => ({
+    ...group,
+    patterns: kept.map((observed, k) => ({
+      observed: Int32Array.from(observed),
+      n: group.n / 3,
+      mean: Float64Array.from(observed, (i) => group.mean![i]! + 0.03 * (k - g)),
+      covariance: Float64Array.from(
+        observed.flatMap((i) => observed.map((j) => group.covariance[i * 6 + j]! * (i === j ? 1 + 0.1 * k : 1)))
+      )
+    }))
+  }))
+  return { ...moments, groups }
+}
 
 /** Derivatives of Sigma and mu by central differences, multiplied out with a general-purpose matrix library. */
 function denseCurvature(model: CompiledModel, moments: SampleMoments, gamma: Float64Array): Matrix {

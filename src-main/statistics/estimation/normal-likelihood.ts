@@ -1,23 +1,29 @@
 /**
- * The normal-theory discrepancy of complete data, its gradient and its expected second derivatives (methods: section 2).
+ * The normal-theory discrepancy, of complete data or by missingness patterns (full information), with its gradient and its
+ * expected or observed second derivatives (methods: sections 2 and 3; Arbuckle 1996).
  *
- *     F = sum_g (n_g / N) F_g      F_g = ln|Sigma| - ln|S| + tr(D W) - p      D = S + d d'   d = ybar - mu   W = Sigma^-1
+ *     F = sum_g (n_g / N) F_g      F_g = sum_k (n_k / n_g) [ln|Sigma_k| + tr(D_k W_k)] - h_g
+ *     D_k = S_k + d_k d_k'   d_k = ybar_k - mu_k   W_k = Sigma_k^-1, all over the indicators observed in pattern k
  *
- * Every free cell changes Sigma by c (u v' + v u') and mu by w s, where u, v and s are columns of B = [I, E, L]
- * (p x P, P = p + 2m; E = Lambda A, L = Lambda C). With G = B' W B and H = B' Omega B, Omega = W (Sigma - D) W:
+ * h_g is the same sum at the unrestricted moments, so that F is 0 for a saturated model and T = N F; complete data are one
+ * pattern, and h_g = ln|S| + p. With W~ the W_k padded by zeros to p x p, and likewise Q~ of Q = W D W and z~ of z = W d,
  *
- *     dF_g/d cell          = 2 c H[u,v] - 2 w (W d)' s
- *     E d2F_g/d cell1 cell2 = 2 c1 c2 (G[u1,u2] G[v1,v2] + G[u1,v2] G[v1,u2]) + 2 w1 w2 G[s1,s2]
+ *     dF_g/d cell = 2 c H[u,v] - 2 w (z' s)     H = B' Omega B   Omega = sum_k (n_k / n_g) (W~ - Q~)   z = sum_k (n_k / n_g) z~
  *
- * so the information costs O(1) a pair of cells and no derivative matrix is ever formed. The information matrix of
- * gamma is (N/2) times the second derivatives. Convention: N = sum n_g, or sum (n_g - 1) under Wishart.
+ * in the columns of cell-columns.ts, so no derivative matrix is ever formed. The information of gamma is (N/2) times the
+ * second derivatives (curvature.ts). Convention: N = sum n_g, or sum (n_g - 1) under Wishart.
  */
 import { cholesky, choleskyInverse, dotRows, logDeterminant, mirrorLower, multiply } from '../matrix/symmetric.ts'
 import type { CompiledGroup, CompiledModel } from '../model/compile.ts'
 import { type GroupState, groupState, impliedMoments } from '../model/implied-moments.ts'
-import type { SampleMoments } from '../moments/sample-moments.ts'
+import type { GroupMoments, Pattern, SampleMoments } from '../moments/sample-moments.ts'
+import { type CellColumns, cellColumns, columnDot, formEntry, sideBySide } from './cell-columns.ts'
+import { addExpectedCurvature, addObservedCurvature } from './curvature.ts'
+
+export { cellColumns } from './cell-columns.ts'
 
 export type Convention = 'normal' | 'wishart'
+export type CurvatureKind = 'expected' | 'observed'
 
 /** F of one model on one set of moments, as the optimiser sees it. Not re-entrant: its work space is shared by all calls. */
 export interface Objective {
@@ -31,9 +37,9 @@ export interface Objective {
    * Derivatives at the gamma last evaluated (which must not have given NaN).
    *
    * @param gradient dF/dgamma (q), written
-   * @param curvature expected d2F (q x q, lower triangle), written when given
+   * @param curvature d2F (q x q, lower triangle), written when given: expected unless `kind` says observed
    */
-  derive(gradient: Float64Array, curvature?: Float64Array): void
+  derive(gradient: Float64Array, curvature?: Float64Array, kind?: CurvatureKind): void
   /** The matrices of each group at the last gamma evaluated. */
   states: readonly GroupState[]
 }
@@ -48,13 +54,7 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
   const total = moments.groups.reduce((sum, g) => sum + effectiveSize(g.n, convention), 0)
   const groups = model.groups.map((group, g) => {
     const sample = moments.groups[g]!
-    return groupWork(
-      model,
-      group,
-      sample.covariance,
-      model.meanStructure ? sample.mean : null,
-      effectiveSize(sample.n, convention) / total
-    )
+    return groupWork(model, group, sample, effectiveSize(sample.n, convention) / total)
   })
   return {
     parameters: model.parameters,
@@ -68,151 +68,162 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
       }
       return value
     },
-    derive(gradient, curvature) {
+    derive(gradient, curvature, kind = 'expected') {
       gradient.fill(0)
       for (const work of groups) addGradient(work, gradient)
       if (curvature === undefined) return
       curvature.fill(0)
-      for (const work of groups) addCurvature(work, curvature, model.parameters)
+      const add = kind === 'expected' ? addExpectedCurvature : addObservedCurvature
+      for (const work of groups) add(work, curvature, model.parameters)
     }
   }
 }
 
-interface GroupWork {
+/** One missingness pattern of a group: its sufficient statistics and the work space that `evaluate` leaves for `derive`. */
+export interface PatternWork {
+  /** k, indicators observed */
+  k: number
+  /** Indices of the observed indicators, ascending. */
+  observed: Int32Array
+  complete: boolean
+  /** n_k / n_g */
+  share: number
+  sample: Float64Array
+  sampleMean: Float64Array | null
+  /** k x k each, at the gamma last evaluated */
+  w: Float64Array
+  wd: Float64Array
+  /** k: ybar_k - mu_k, and W d */
+  d: Float64Array
+  z: Float64Array
+}
+
+export interface GroupWork extends CellColumns {
   group: CompiledGroup
   state: GroupState
+  /** n_g / N */
   weight: number
   p: number
   /** P = p + 2m */
   size: number
-  sample: Float64Array
-  sampleMean: Float64Array | null
-  sampleLogDeterminant: number
-  d: Float64Array
-  data: Float64Array
-  w: Float64Array
-  chol: Float64Array
-  wd: Float64Array
+  patterns: PatternWork[]
+  /** h_g */
+  unrestricted: number
+  /** p x p each: sum over patterns of W~ - Q~; a padded matrix. */
   omega: Float64Array
-  wMean: Float64Array
-  first: Int32Array
-  /** P x P: G, with W as its first p rows and columns. */
-  gram: Float64Array
+  padded: Float64Array
+  /** p: sum over patterns of z~ */
+  z: Float64Array
+  /** p x 2m: [E, L]; and a product with it */
   columns: Float64Array
   product: Float64Array
-  /** Per free cell: u, v (indices into B; -1 for a mean cell), c, s (-1 when mu does not move), factor whose mean is w (-1: w = 1). */
-  u: Int32Array
-  v: Int32Array
-  c: Float64Array
-  s: Int32Array
-  meanFactor: Int32Array
+  /** P x P */
+  form: Float64Array
+  /** Per free cell: w. */
   meanWeight: Float64Array
-  /** True when every cell is one gamma with weight 1. */
+  /** True when every cell is one gamma with weight 1, and then that gamma. */
   plain: boolean
   gamma: Int32Array
+  scratch: { chol: Float64Array; data: Float64Array; first: Int32Array }
 }
 
-function groupWork(
-  model: CompiledModel,
-  group: CompiledGroup,
-  sample: Float64Array,
-  sampleMean: Float64Array | null,
-  weight: number
-): GroupWork {
+function groupWork(model: CompiledModel, group: CompiledGroup, sample: GroupMoments, weight: number): GroupWork {
   const p = model.indicators.length
   const m = model.factors.length
   const size = p + 2 * m
   const array = (length: number) => new Float64Array(length)
-  const chol = array(p * p)
-  if (!cholesky(sample, p, chol)) throw new Error('a sample covariance matrix is not positive definite')
-  const cells = cellColumns(group, p, m, model.meanStructure)
-  return {
+  const patterns = patternsOf(sample, p).map((pattern) => patternWork(pattern, p, sample.n, model.meanStructure))
+  const work: GroupWork = {
     group,
     state: groupState(p, m),
     weight,
     p,
     size,
-    sample,
-    sampleMean,
-    sampleLogDeterminant: logDeterminant(chol, p),
-    d: array(p),
-    data: array(p * p),
-    w: array(p * p),
-    chol,
-    wd: array(p * p),
+    patterns,
+    unrestricted: 0,
     omega: array(p * p),
-    wMean: array(p),
-    first: new Int32Array(p),
-    gram: array(size * size),
+    padded: array(p * p),
+    z: array(p),
     columns: array(p * 2 * m),
     product: array(p * 2 * m),
-    ...cells,
+    form: array(size * size),
+    ...cellColumns(group, p, m, model.meanStructure),
     meanWeight: array(group.free.length),
     plain: group.free.every((cell) => cell.gammas.length === 1 && cell.weights[0] === 1),
-    gamma: Int32Array.from(group.free, (cell) => cell.gammas[0] ?? -1)
+    gamma: Int32Array.from(group.free, (cell) => cell.gammas[0] ?? -1),
+    scratch: { chol: array(p * p), data: array(p * p), first: new Int32Array(p) }
+  }
+  work.unrestricted = patternSum(work, sample.covariance, sample.mean)
+  if (Number.isNaN(work.unrestricted)) throw new Error('a sample covariance matrix is not positive definite')
+  return work
+}
+
+/** Complete data are one pattern with every indicator. */
+function patternsOf(sample: GroupMoments, p: number): Pattern[] {
+  if (sample.patterns !== undefined) return sample.patterns
+  return [{ observed: Int32Array.from({ length: p }, (_, i) => i), n: sample.n, mean: sample.mean, covariance: sample.covariance }]
+}
+
+function patternWork({ observed, n, mean, covariance }: Pattern, p: number, total: number, means: boolean): PatternWork {
+  const k = observed.length
+  return {
+    k,
+    observed,
+    complete: k === p,
+    share: n / total,
+    sample: covariance,
+    sampleMean: means ? mean : null,
+    w: new Float64Array(k * k),
+    wd: new Float64Array(k * k),
+    d: new Float64Array(k),
+    z: new Float64Array(k)
   }
 }
 
-/** Per free cell of a group: u, v, c, s and the factor whose mean weighs s (see the head of this file). */
-export type CellColumns = Pick<GroupWork, 'u' | 'v' | 'c' | 's' | 'meanFactor'>
-
-/** The columns of B that each free cell moves Sigma and mu along (see the head of this file). */
-export function cellColumns(group: CompiledGroup, p: number, m: number, means: boolean): CellColumns {
-  const count = group.free.length
-  const out: CellColumns = {
-    u: new Int32Array(count).fill(-1),
-    v: new Int32Array(count).fill(-1),
-    c: new Float64Array(count),
-    s: new Int32Array(count).fill(-1),
-    meanFactor: new Int32Array(count).fill(-1)
-  }
-  group.free.forEach(({ matrix, row, column }, i) => {
-    const set = (u: number, v: number, c: number) => {
-      out.u[i] = u
-      out.v[i] = v
-      out.c[i] = c
-    }
-    const symmetric = row === column ? 0.5 : 1
-    if (matrix === 'lambda') set(row, p + m + column, 1)
-    if (matrix === 'beta') set(p + row, p + m + column, 1)
-    if (matrix === 'psi') set(p + row, p + column, symmetric)
-    if (matrix === 'theta') set(row, column, symmetric)
-    if (means && matrix !== 'psi' && matrix !== 'theta') {
-      out.s[i] = matrix === 'lambda' || matrix === 'nu' ? row : p + row
-      if (matrix === 'lambda' || matrix === 'beta') out.meanFactor[i] = column
-    }
-  })
-  return out
-}
-
-/** F_g, leaving W, D, W D and W d in the work space. */
+/** F_g, leaving W, W D and W d of every pattern in the work space. */
 function groupDiscrepancy(work: GroupWork, gamma: Float64Array, regressions: boolean): number {
-  const { p, state, sample, sampleMean, chol, w, data, wd, d } = work
-  if (!impliedMoments(work.group, gamma, regressions, state)) return Number.NaN
-  if (!cholesky(state.sigma, p, chol)) return Number.NaN
-  const logDet = logDeterminant(chol, p)
-  choleskyInverse(chol, p, w, work.first)
-  data.set(sample)
-  if (sampleMean !== null) {
-    for (let i = 0; i < p; i++) d[i] = sampleMean[i]! - state.mu[i]!
-    for (let i = 0; i < p; i++) for (let j = 0; j < p; j++) data[i * p + j]! += d[i]! * d[j]!
-  }
-  multiply(w, data, p, p, p, wd)
-  let trace = 0
-  for (let i = 0; i < p; i++) trace += wd[i * p + i]!
-  return logDet - work.sampleLogDeterminant + trace - p
+  if (!impliedMoments(work.group, gamma, regressions, work.state)) return Number.NaN
+  return patternSum(work, work.state.sigma, work.state.mu) - work.unrestricted
 }
 
-/** Omega = W - W D W, then the entries of B' Omega B that the free cells need. */
-function addGradient(work: GroupWork, gradient: Float64Array): void {
-  const { p, state, w, wd, omega, d, wMean, size, columns, product, u, v, c, s } = work
-  for (let i = 0; i < p; i++) {
-    for (let j = 0; j <= i; j++) {
-      omega[i * p + j] = w[i * p + j]! - dotRows(wd, i * p, w, j * p, p)
-    }
+/** sum_k (n_k / n_g) [ln|Sigma_k| + tr(D_k W_k)] at the given moments; NaN where Sigma_k is not positive definite. */
+function patternSum(work: GroupWork, sigma: Float64Array, mu: Float64Array | null): number {
+  let sum = 0
+  for (const pattern of work.patterns) {
+    sum += pattern.share * patternValue(work, pattern, sigma, mu)
+    if (Number.isNaN(sum)) return Number.NaN
   }
-  mirrorLower(omega, p)
-  multiply(w, d, p, p, 1, wMean)
+  return sum
+}
+
+function patternValue({ p, scratch }: GroupWork, pattern: PatternWork, sigma: Float64Array, mu: Float64Array | null): number {
+  const { k, observed, w, wd, d, z, sample, sampleMean } = pattern
+  const { chol, data, first } = scratch
+  for (let i = 0; i < k; i++) {
+    const row = observed[i]! * p
+    for (let j = 0; j <= i; j++) chol[i * k + j] = sigma[row + observed[j]!]!
+    for (let j = i + 1; j < k; j++) chol[i * k + j] = 0
+  }
+  if (!cholesky(chol, k, chol)) return Number.NaN
+  const logDet = logDeterminant(chol, k)
+  choleskyInverse(chol, k, w, first)
+  let moments = sample
+  if (sampleMean !== null && mu !== null) {
+    for (let i = 0; i < k; i++) d[i] = sampleMean[i]! - mu[observed[i]!]!
+    for (let i = 0; i < k; i++) for (let j = 0; j < k; j++) data[i * k + j] = sample[i * k + j]! + d[i]! * d[j]!
+    moments = data
+  }
+  multiply(w, moments, k, k, k, wd)
+  multiply(w, d, k, k, 1, z)
+  let trace = 0
+  for (let i = 0; i < k; i++) trace += wd[i * k + i]!
+  return logDet + trace
+}
+
+/** Sums Omega and z over the patterns, then takes the entries of B' Omega B that the free cells need. */
+function addGradient(work: GroupWork, gradient: Float64Array): void {
+  sumPatterns(work)
+  const { p, state, omega, z, size, columns, product, u, v, c, s } = work
   sideBySide(state, columns)
   const wide = size - p
   multiply(omega, columns, p, p, wide, product)
@@ -224,111 +235,25 @@ function addGradient(work: GroupWork, gradient: Float64Array): void {
       const factor = work.meanFactor[i]!
       const weight = factor < 0 ? 1 : state.factorMean[factor]!
       work.meanWeight[i] = weight
-      value -= 2 * weight * columnDot(wMean, columns, p, wide, s[i]!)
+      value -= 2 * weight * columnDot(z, columns, p, wide, s[i]!)
     }
     const { gammas, weights } = free[i]!
     for (let k = 0; k < gammas.length; k++) gradient[gammas[k]!]! += work.weight * value * weights[k]!
   }
 }
 
-/** columns = [E, L], p x 2m */
-function sideBySide(state: GroupState, columns: Float64Array): void {
-  const { p, m, e, l } = state
-  for (let i = 0; i < p; i++) {
-    for (let k = 0; k < m; k++) {
-      columns[i * 2 * m + k] = e[i * m + k]!
-      columns[i * 2 * m + m + k] = l[i * m + k]!
-    }
-  }
-}
-
-/** (B' M B)[u, v] where M is p x p symmetric, `columns` = [E, L] and `product` = M [E, L]. */
-function formEntry(
-  m: Float64Array,
-  columns: Float64Array,
-  product: Float64Array,
-  p: number,
-  wide: number,
-  u: number,
-  v: number
-): number {
-  if (u < p && v < p) return m[u * p + v]!
-  if (u < p) return product[u * wide + v - p]!
-  if (v < p) return product[v * wide + u - p]!
-  let sum = 0
-  for (let i = 0; i < p; i++) sum += columns[i * wide + u - p]! * product[i * wide + v - p]!
-  return sum
-}
-
-/** x' B[:, s] */
-function columnDot(x: Float64Array, columns: Float64Array, p: number, wide: number, s: number): number {
-  if (s < p) return x[s]!
-  let sum = 0
-  for (let i = 0; i < p; i++) sum += x[i]! * columns[i * wide + s - p]!
-  return sum
-}
-
-/** Adds this group's expected second derivatives; addGradient must have run before (it leaves [E, L] and the mean weights). */
-function addCurvature(work: GroupWork, curvature: Float64Array, q: number): void {
-  fillGram(work)
-  const { gram, size, u, v, c, s, meanWeight, plain, gamma, weight } = work
-  const { free } = work.group
-  for (let i = 0; i < free.length; i++) {
-    const ui = u[i]! * size
-    const vi = v[i]! * size
-    const si = s[i]! * size
-    const ci = c[i]!
-    for (let j = 0; j <= i; j++) {
-      let value = 0
-      if (ci !== 0 && c[j]! !== 0) {
-        const uj = u[j]!
-        const vj = v[j]!
-        value = 2 * ci * c[j]! * (gram[ui + uj]! * gram[vi + vj]! + gram[ui + vj]! * gram[vi + uj]!)
+function sumPatterns({ p, patterns, omega, z }: GroupWork): void {
+  omega.fill(0)
+  z.fill(0)
+  for (const pattern of patterns) {
+    const { k, observed, w, wd, share } = pattern
+    for (let i = 0; i < k; i++) {
+      const row = observed[i]! * p
+      for (let j = 0; j <= i; j++) {
+        omega[row + observed[j]!]! += share * (w[i * k + j]! - dotRows(wd, i * k, w, j * k, k))
       }
-      if (si >= 0 && s[j]! >= 0) value += 2 * meanWeight[i]! * meanWeight[j]! * gram[si + s[j]!]!
-      if (value === 0) continue
-      if (plain) addSymmetric(curvature, q, gamma[i]!, gamma[j]!, i === j, weight * value)
-      else spread(curvature, q, work.group, i, j, weight * value)
+      z[observed[i]!]! += share * pattern.z[i]!
     }
   }
-}
-
-/** Lower triangle; two different cells of one gamma count twice on its diagonal. */
-function addSymmetric(curvature: Float64Array, q: number, a: number, b: number, sameCell: boolean, value: number): void {
-  if (a === b) curvature[a * q + a]! += sameCell ? value : 2 * value
-  else if (a > b) curvature[a * q + b]! += value
-  else curvature[b * q + a]! += value
-}
-
-function spread(curvature: Float64Array, q: number, group: CompiledGroup, i: number, j: number, value: number): void {
-  const a = group.free[i]!
-  const b = group.free[j]!
-  for (let k = 0; k < a.gammas.length; k++) {
-    for (let l = 0; l < b.gammas.length; l++) {
-      if (i === j && l > k) break
-      addSymmetric(curvature, q, a.gammas[k]!, b.gammas[l]!, i === j, value * a.weights[k]! * b.weights[l]!)
-    }
-  }
-}
-
-/** G = B' W B with B = [I, E, L]. */
-function fillGram(work: GroupWork): void {
-  const { p, size, w, gram, columns, product } = work
-  const wide = size - p
-  multiply(w, columns, p, p, wide, product)
-  for (let i = 0; i < p; i++) {
-    for (let j = 0; j < p; j++) gram[i * size + j] = w[i * p + j]!
-    for (let k = 0; k < wide; k++) {
-      gram[i * size + p + k] = product[i * wide + k]!
-      gram[(p + k) * size + i] = product[i * wide + k]!
-    }
-  }
-  for (let k = 0; k < wide; k++) {
-    for (let l = 0; l <= k; l++) {
-      let sum = 0
-      for (let i = 0; i < p; i++) sum += columns[i * wide + k]! * product[i * wide + l]!
-      gram[(p + k) * size + p + l] = sum
-      gram[(p + l) * size + p + k] = sum
-    }
-  }
+  mirrorLower(omega, p)
 }

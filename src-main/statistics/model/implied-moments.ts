@@ -18,7 +18,7 @@ export interface GroupState {
   theta: Float64Array
   nu: Float64Array
   alpha: Float64Array
-  /** m x m */
+  /** m x m; stays the identity where no factor has predictors */
   a: Float64Array
   /** m x m: Var(eta) */
   c: Float64Array
@@ -46,7 +46,7 @@ export function groupState(p: number, m: number): GroupState {
     theta: array(p * p),
     nu: array(p),
     alpha: array(m),
-    a: array(m * m),
+    a: Float64Array.from({ length: m * m }, (_, at) => (at % (m + 1) === 0 ? 1 : 0)),
     c: array(m * m),
     e: array(p * m),
     l: array(p * m),

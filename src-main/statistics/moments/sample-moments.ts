@@ -10,6 +10,19 @@ export interface GroupMoments {
   n: number
   covariance: Float64Array
   mean: Float64Array | null
+  /** Full information: the cases by missingness pattern; covariance and mean are then the unrestricted estimates. */
+  patterns?: Pattern[]
+}
+
+/** The cases that have answered the same indicators: sufficient statistics of what they answered. */
+export interface Pattern {
+  /** Indices of the answered indicators, ascending; k of them. */
+  observed: Int32Array
+  n: number
+  /** k; null where means are not modelled */
+  mean: Float64Array | null
+  /** k x k, divisor n */
+  covariance: Float64Array
 }
 
 export interface SampleMoments {

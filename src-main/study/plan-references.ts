@@ -5,6 +5,7 @@
  * a path in the plan ("candidates.0.from") into the place to name in a message.
  */
 import { InputError } from './input-error.ts'
+import { ladderCandidates } from './ladders.ts'
 import { didYouMean } from './nearest.ts'
 import { checkCandidate } from './plan-candidate-checks.ts'
 import { acrossOf, checkGrouping, type Fail, hasMeans, lineageOf } from './plan-context.ts'
@@ -88,20 +89,21 @@ function checkData(plan: Plan, fail: Fail): void {
 }
 
 function checkLadder(plan: Plan, ladder: LadderPlan, fail: Fail): void {
-  const names = plan.candidates.map((candidate) => candidate.name)
-  const unknown = (name: string, path: string): void => {
+  const written = plan.candidates.map((candidate) => candidate.name)
+  const unknown = (name: string, path: string, names: readonly string[]): void => {
     if (!names.includes(name))
       fail(path, `The ladder "${ladder.name}" names "${name}", which is not a candidate.`, didYouMean(name, names, 'candidates'))
   }
   if ('rungs' in ladder) {
+    const names = [...new Set([...written, ...generatedNames(plan)])]
     ladder.rungs.forEach((rung, r) => {
-      unknown(rung, `.rungs.${r}`)
+      unknown(rung, `.rungs.${r}`, names)
       if (ladder.rungs.indexOf(rung) < r)
         fail(`.rungs.${r}`, `"${rung}" stands twice on the ladder "${ladder.name}".`, 'Remove one.')
     })
     return
   }
-  unknown(ladder.invarianceOf, '.invariance of')
+  unknown(ladder.invarianceOf, '.invariance of', written)
   checkGrouping(plan, ladder.across, (what, remedy) => fail('.across', what, remedy))
   if (!hasMeans(plan) && (ladder.through === 'scalar' || ladder.through === 'strict')) {
     fail(
@@ -110,6 +112,14 @@ function checkLadder(plan: Plan, ladder: LadderPlan, fail: Fail): void {
       'Write "through: metric", or give means.'
     )
   }
+}
+
+/** What the invariance ladders of the plan bring with them: a listed ladder may stand on it, with a partial step in between, say. */
+function generatedNames(plan: Plan): string[] {
+  const written = new Set(plan.candidates.map((candidate) => candidate.name))
+  return plan.ladders
+    .filter((ladder) => 'invarianceOf' in ladder && written.has(ladder.invarianceOf))
+    .flatMap((ladder) => ladderCandidates(ladder, plan.candidates).map((candidate) => candidate.name))
 }
 
 function checkRules({ rules }: Plan, fail: Fail): void {

@@ -145,6 +145,28 @@ if (executable === null) {
         await page.screenshot({ path: join(pictures, 'window-decision.png') })
       })
 
+      test('lets one intercept go from a rung that the ladder made, and stands the result between its rungs', async () => {
+        await page.getByRole('tab', { name: 'Across clinics' }).click()
+        await candidate(page, 'Three factors, scalar').click()
+        await page.getByRole('button', { name: 'Derive', exact: true }).click()
+        const dialog = page.getByRole('dialog')
+        await dialog.getByTestId('candidate-name').fill('Scalar but for bags')
+        await dialog.getByLabel('What to do').selectOption('release')
+        await dialog.getByLabel('Part').selectOption('intercept')
+        await dialog.getByLabel('First name').selectOption('bags')
+        await dialog.getByRole('button', { name: 'Add change' }).click()
+        await expect.poll(() => textOf(dialog.getByTestId('check'))).toMatch(/94 df, identified/)
+        await dialog.getByRole('button', { name: 'Add candidate' }).click()
+        await page.getByRole('button', { name: 'Fit 1 draft' }).click()
+        await expect.poll(() => candidate(page, 'Scalar but for bags').getAttribute('data-state')).toBe('fitted')
+        await page.getByRole('button', { name: 'Set it on a ladder…' }).click()
+        await dialog.getByRole('button', { name: 'Add ladder' }).click()
+        await dialog.waitFor({ state: 'detached' })
+        const levels = ['strict', 'scalar', 'metric', 'configural'].map((level) => `Three factors, ${level}`)
+        await expect.poll(() => rungNames(page)).toEqual(levels.toSpliced(2, 0, 'Scalar but for bags'))
+        await expect.poll(() => page.getByTestId('step').count()).toBe(4)
+      })
+
       test('tells the whole story in its trail, with the chain verified', async () => {
         const { trail } = (await host.ask('currentStudy', null))!
         await page.getByRole('button', { name: /^Trail/ }).click()

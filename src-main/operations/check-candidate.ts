@@ -3,7 +3,7 @@
  */
 import { seededGenerator } from '../statistics/distributions/generator.ts'
 import { unidentifiedLabels } from '../statistics/estimation/identification.ts'
-import { labelWords } from '../statistics/fit/fit.ts'
+import { labelWords } from '../statistics/fit/label-words.ts'
 import type { Cell, GroupCells, ModelCells } from '../statistics/model/cells.ts'
 import { compileModel } from '../statistics/model/compile.ts'
 import { candidateSentence } from '../study/sentences.ts'

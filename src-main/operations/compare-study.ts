@@ -116,7 +116,8 @@ async function fitAll(input: CompareInput, entries: Entry[], crew: Crew, { onWor
       candidate: candidate.name,
       cells,
       moments,
-      settings: { convention: plan.estimation.convention }
+      settings: { convention: plan.estimation.convention },
+      rows: null
     }
     const outcome = await crew.fit(job, signal)
     memory.fits.set(digest, outcome)

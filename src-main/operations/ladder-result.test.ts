@@ -36,10 +36,11 @@ function side(name: string, T: number, df: number, more: Partial<CandidateResult
     rmsea: { estimate: Math.sqrt(Math.max(0, T - df) / (df * 500)), lower: null, upper: null, closeFitP: null, notCloseFitP: null },
     srmr: 0.02 + T / 5000,
     srmrWithMeans: null,
+    standardErrors: 'expected',
     estimates: [],
     residuals: null,
     cautions: [],
-    convergence: { iterations: 5, largestGradient: 1e-10, starts: 1, minima: 1 },
+    convergence: { iterations: 5, largestGradient: 1e-10, starts: 1, minima: 1, tried: [] },
     ...more
   }
 }

@@ -93,10 +93,11 @@ export function smallOutcome(changes: Partial<FitOutcome['fit']> = {}): FitOutco
     rmsea: { estimate: none, lower: none, upper: none, closeFitP: none, notCloseFitP: none },
     srmr: none,
     srmrWithMeans: none,
+    standardErrors: 'expected',
     estimates: [],
     residuals: none,
     cautions: [],
-    convergence: { iterations: 4, largestGradient: 1e-12, starts: 1, minima: 1 }
+    convergence: { iterations: 4, largestGradient: 1e-12, starts: 1, minima: 1, tried: [] }
   }
   return { fit: { ...fit, ...changes }, gamma: [0.1, 1 / 3] }
 }

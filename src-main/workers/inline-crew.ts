@@ -22,5 +22,5 @@ export function doJob(job: FitJob): FitOutcome
 export function doJob(job: RelationJob): RelationOutcome
 export function doJob(job: FitJob | RelationJob): FitOutcome | RelationOutcome
 export function doJob(job: FitJob | RelationJob): FitOutcome | RelationOutcome {
-  return job.kind === 'fit' ? fitModel(job.cells, job.moments, job.settings) : relationOf(job)
+  return job.kind === 'fit' ? fitModel(job.cells, job.moments, job.settings, job.rows) : relationOf(job)
 }

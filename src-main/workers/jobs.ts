@@ -2,7 +2,8 @@
  * What a fit worker is asked and what it answers: plain, structured-clonable values. No statistics here.
  */
 import type { RelationInput, RelationOutcome } from '../statistics/comparison/relation.ts'
-import type { FitOutcome, FitSettings } from '../statistics/fit/fit.ts'
+import type { FitOutcome } from '../statistics/fit/fit-result.ts'
+import type { FitSettings } from '../statistics/fit/settings.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
 import type { SampleMoments } from '../statistics/moments/sample-moments.ts'
 
@@ -12,6 +13,8 @@ export interface FitJob {
   cells: ModelCells
   moments: SampleMoments
   settings: FitSettings
+  /** Per group n x p row-major, NaN where missing; null where nothing casewise is asked. */
+  rows: Float64Array[] | null
 }
 
 /** Is the model `restricted` (with its solution) nested in `general`? */
@@ -27,4 +30,4 @@ export interface Crew {
 }
 
 export type { RelationOutcome } from '../statistics/comparison/relation.ts'
-export type { FitOutcome, FitSettings } from '../statistics/fit/fit.ts'
+export type { FitOutcome } from '../statistics/fit/fit-result.ts'

@@ -34,7 +34,8 @@ function job(candidate: string): FitJob {
     candidate,
     cells: { indicators: ['a'], factors: [], groups: [], constraints: [] },
     moments,
-    settings: { convention: 'normal' }
+    settings: { convention: 'normal' },
+    rows: null
   }
 }
 

@@ -2,7 +2,8 @@
  * The worked examples, reproduced within the tolerance each file states. Sources stand in the files and beside each check.
  */
 import { describe, expect, it } from 'vitest'
-import { type FitOutcome, fitModel } from '../../src-main/statistics/fit/fit.ts'
+import { fitModel } from '../../src-main/statistics/fit/fit.ts'
+import type { FitOutcome } from '../../src-main/statistics/fit/fit-result.ts'
 import { compileModel } from '../../src-main/statistics/model/compile.ts'
 import { type Example, exampleCells, exampleMoments, readExample } from './examples.ts'
 

@@ -93,10 +93,11 @@ function candidate(name: string, own: Partial<CandidateResult>): CandidateResult
     rmsea: { estimate: 0.04, lower: 0.024, upper: 0.053, closeFitP: 0.8, notCloseFitP: 0 },
     srmr: 0.031,
     srmrWithMeans: 0.032,
+    standardErrors: 'expected',
     estimates: [],
     residuals: null,
     cautions: [],
-    convergence: { iterations: 9, largestGradient: 1e-10, starts: 1, minima: 1 },
+    convergence: { iterations: 9, largestGradient: 1e-10, starts: 1, minima: 1, tried: [] },
     ...own
   }
 }

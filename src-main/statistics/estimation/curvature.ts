@@ -12,8 +12,8 @@
  */
 import type { CompiledGroup } from '../model/compile.ts'
 import { columnDot, wholeForm } from './cell-columns.ts'
-import type { GroupWork, PatternWork } from './normal-likelihood.ts'
 import { addSecondOrder } from './second-order.ts'
+import type { GroupWork, PatternWork } from './work.ts'
 
 /** Adds this group's expected second derivatives; the gradient must have been made before (it leaves [E, L] and the mean weights). */
 export function addExpectedCurvature(work: GroupWork, curvature: Float64Array, q: number): void {

@@ -17,8 +17,9 @@ import { cholesky, choleskyInverse, dotRows, logDeterminant, mirrorLower, multip
 import type { CompiledGroup, CompiledModel } from '../model/compile.ts'
 import { type GroupState, groupState, impliedMoments } from '../model/implied-moments.ts'
 import type { GroupMoments, Pattern, SampleMoments } from '../moments/sample-moments.ts'
-import { type CellColumns, cellColumns, columnDot, formEntry, sideBySide } from './cell-columns.ts'
+import { cellColumns, columnDot, formEntry, sideBySide } from './cell-columns.ts'
 import { addExpectedCurvature, addObservedCurvature } from './curvature.ts'
+import type { GroupWork, PatternWork } from './work.ts'
 
 export { cellColumns } from './cell-columns.ts'
 
@@ -42,6 +43,10 @@ export interface Objective {
   derive(gradient: Float64Array, curvature?: Float64Array, kind?: CurvatureKind): void
   /** The matrices of each group at the last gamma evaluated. */
   states: readonly GroupState[]
+  /** F of the baseline: all covariances zero, means and variances free (T_b / N). */
+  baseline: number
+  /** Log-likelihood at the unrestricted moments. */
+  unrestrictedLogLikelihood: number
 }
 
 /** Effective size of a group under a convention. */
@@ -60,6 +65,8 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
     parameters: model.parameters,
     total,
     states: groups.map((g) => g.state),
+    baseline: groups.reduce((sum, work) => sum + work.weight * baselineDiscrepancy(work), 0),
+    unrestrictedLogLikelihood: groups.reduce((sum, work) => sum + unrestrictedLogLikelihood(work, total), 0),
     evaluate(gamma) {
       let value = 0
       for (const work of groups) {
@@ -77,54 +84,6 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
       for (const work of groups) add(work, curvature, model.parameters)
     }
   }
-}
-
-/** One missingness pattern of a group: its sufficient statistics and the work space that `evaluate` leaves for `derive`. */
-export interface PatternWork {
-  /** k, indicators observed */
-  k: number
-  /** Indices of the observed indicators, ascending. */
-  observed: Int32Array
-  complete: boolean
-  /** n_k / n_g */
-  share: number
-  sample: Float64Array
-  sampleMean: Float64Array | null
-  /** k x k each, at the gamma last evaluated */
-  w: Float64Array
-  wd: Float64Array
-  /** k: ybar_k - mu_k, and W d */
-  d: Float64Array
-  z: Float64Array
-}
-
-export interface GroupWork extends CellColumns {
-  group: CompiledGroup
-  state: GroupState
-  /** n_g / N */
-  weight: number
-  p: number
-  /** P = p + 2m */
-  size: number
-  patterns: PatternWork[]
-  /** h_g */
-  unrestricted: number
-  /** p x p each: sum over patterns of W~ - Q~; a padded matrix. */
-  omega: Float64Array
-  padded: Float64Array
-  /** p: sum over patterns of z~ */
-  z: Float64Array
-  /** p x 2m: [E, L]; and a product with it */
-  columns: Float64Array
-  product: Float64Array
-  /** P x P */
-  form: Float64Array
-  /** Per free cell: w. */
-  meanWeight: Float64Array
-  /** True when every cell is one gamma with weight 1, and then that gamma. */
-  plain: boolean
-  gamma: Int32Array
-  scratch: { chol: Float64Array; data: Float64Array; first: Int32Array }
 }
 
 function groupWork(model: CompiledModel, group: CompiledGroup, sample: GroupMoments, weight: number): GroupWork {
@@ -178,6 +137,37 @@ function patternWork({ observed, n, mean, covariance }: Pattern, p: number, tota
     d: new Float64Array(k),
     z: new Float64Array(k)
   }
+}
+
+/** F_g at independent indicators: each one's own mean and variance (divisor n) over those who answered it. */
+function baselineDiscrepancy(work: GroupWork): number {
+  const { p, patterns } = work
+  const n = new Float64Array(p)
+  const mean = new Float64Array(p)
+  const sigma = new Float64Array(p * p)
+  const means = patterns.every((pattern) => pattern.sampleMean !== null)
+  const each = (add: (pattern: PatternWork, i: number, a: number) => void) => {
+    for (const pattern of patterns) for (let a = 0; a < pattern.k; a++) add(pattern, pattern.observed[a]!, a)
+  }
+  each(({ share }, i) => {
+    n[i]! += share
+  })
+  if (means) {
+    each(({ share, sampleMean }, i, a) => {
+      mean[i]! += (share * sampleMean![a]!) / n[i]!
+    })
+  }
+  each(({ share, sample, sampleMean, k }, i, a) => {
+    const d = means ? sampleMean![a]! - mean[i]! : 0
+    sigma[i * p + i]! += (share * (sample[a * k + a]! + d * d)) / n[i]!
+  })
+  return patternSum(work, sigma, means ? mean : null) - work.unrestricted
+}
+
+/** -1/2 n_g [answers a case ln(2 pi) + h_g] */
+function unrestrictedLogLikelihood({ weight, patterns, unrestricted }: GroupWork, total: number): number {
+  const answers = patterns.reduce((sum, { share, k }) => sum + share * k, 0)
+  return -((weight * total) / 2) * (answers * Math.log(2 * Math.PI) + unrestricted)
 }
 
 /** F_g, leaving W, W D and W d of every pattern in the work space. */

@@ -9,7 +9,7 @@
  */
 import type { FreeCell } from '../model/compile.ts'
 import { columnDot, wholeForm } from './cell-columns.ts'
-import type { GroupWork } from './normal-likelihood.ts'
+import type { GroupWork } from './work.ts'
 
 type Add = (i: number, j: number, value: number) => void
 

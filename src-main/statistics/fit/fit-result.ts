@@ -36,6 +36,15 @@ export interface EstimateResult {
   standardized: number | null
 }
 
+/** One start of the search for the smallest minimum. */
+export interface StartRecord {
+  start: 'ordinary' | 'perturbed'
+  stop: 'converged' | 'iteration limit' | 'no descent' | 'bad start'
+  /** F where it ended. */
+  minimum: number | null
+  iterations: number
+}
+
 /** One candidate's fit: the same fields whether it was fitted or failed. */
 export interface FitResult {
   state: FitState
@@ -66,6 +75,8 @@ export interface FitResult {
   rmsea: RmseaResult
   srmr: number | null
   srmrWithMeans: number | null
+  /** Which information the standard errors come from; null when there is no solution. */
+  standardErrors: 'expected' | 'observed' | 'robust' | null
   estimates: EstimateResult[]
   /** Per group, observed minus implied over sqrt(s_ii s_jj), lower triangle by rows; null when there is no solution. */
   residuals: { group: string | null; lower: number[][] }[] | null
@@ -77,5 +88,13 @@ export interface FitResult {
     /** Starting points tried and distinct minima seen among the converged ones. */
     starts: number
     minima: number
+    /** Every start tried, in order. */
+    tried: StartRecord[]
   }
+}
+
+/** `gamma` is the solution in the model's own parameter order, null when there is none. */
+export interface FitOutcome {
+  fit: FitResult
+  gamma: number[] | null
 }

@@ -146,6 +146,7 @@ function result(view: CandidateView, f: Figures, weight: number): CandidateResul
     rmsea: { estimate: f.rmsea[0], lower: f.rmsea[1], upper: f.rmsea[2], closeFitP: 0.871, notCloseFitP: 0.00002 },
     srmr: f.srmr,
     srmrWithMeans: f.srmr,
+    standardErrors: 'expected',
     estimates: estimates(groups),
     residuals: groups.map((group, g) => ({ group, lower: lower(g) })),
     cautions:
@@ -158,7 +159,7 @@ function result(view: CandidateView, f: Figures, weight: number): CandidateResul
             }
           ]
         : [],
-    convergence: { iterations: 9, largestGradient: 2e-10, starts: 1, minima: 1 }
+    convergence: { iterations: 9, largestGradient: 2e-10, starts: 1, minima: 1, tried: [] }
   }
 }
 

@@ -1,0 +1,54 @@
+/**
+ * The work space of one group's discrepancy: what an evaluation leaves for the derivatives (normal-likelihood.ts).
+ */
+import type { CompiledGroup } from '../model/compile.ts'
+import type { GroupState } from '../model/implied-moments.ts'
+import type { CellColumns } from './cell-columns.ts'
+
+/** One missingness pattern of a group: its sufficient statistics and the work space that `evaluate` leaves for `derive`. */
+export interface PatternWork {
+  /** k, indicators observed */
+  k: number
+  /** Indices of the observed indicators, ascending. */
+  observed: Int32Array
+  complete: boolean
+  /** n_k / n_g */
+  share: number
+  sample: Float64Array
+  sampleMean: Float64Array | null
+  /** k x k each, at the gamma last evaluated */
+  w: Float64Array
+  wd: Float64Array
+  /** k: ybar_k - mu_k, and W d */
+  d: Float64Array
+  z: Float64Array
+}
+
+export interface GroupWork extends CellColumns {
+  group: CompiledGroup
+  state: GroupState
+  /** n_g / N */
+  weight: number
+  p: number
+  /** P = p + 2m */
+  size: number
+  patterns: PatternWork[]
+  /** h_g */
+  unrestricted: number
+  /** p x p each: sum over patterns of W~ - Q~; a padded matrix. */
+  omega: Float64Array
+  padded: Float64Array
+  /** p: sum over patterns of z~ */
+  z: Float64Array
+  /** p x 2m: [E, L]; and a product with it */
+  columns: Float64Array
+  product: Float64Array
+  /** P x P */
+  form: Float64Array
+  /** Per free cell: w. */
+  meanWeight: Float64Array
+  /** True when every cell is one gamma with weight 1, and then that gamma. */
+  plain: boolean
+  gamma: Int32Array
+  scratch: { chol: Float64Array; data: Float64Array; first: Int32Array }
+}

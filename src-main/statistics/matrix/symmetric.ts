@@ -107,6 +107,17 @@ export function choleskyInverse(l: Float64Array, n: number, inverse: Float64Arra
   mirrorLower(inverse, n)
 }
 
+/** Inverse of a positive definite matrix (n x n, lower triangle read), whole; null when it is not. Allocates; for use outside the hot loops. */
+export function positiveInverse(a: Float64Array, n: number): Float64Array | null {
+  const factor = new Float64Array(n * n)
+  const first = new Int32Array(n)
+  envelope(a, n, first)
+  if (!cholesky(a, n, factor, first)) return null
+  const inverse = new Float64Array(n * n)
+  choleskyInverse(factor, n, inverse, first)
+  return inverse
+}
+
 /** Replaces a lower triangular matrix by its inverse, row by row: row i of it is -(l_i before i) times the rows above. */
 function invertLower(l: Float64Array, n: number, first: Int32Array): void {
   const row = new Float64Array(n)

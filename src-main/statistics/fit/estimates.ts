@@ -4,6 +4,7 @@
 import type { CellPart } from '../model/cells.ts'
 import { type CompiledGroup, type CompiledModel, cellValue, type FreeCell, type MatrixName } from '../model/compile.ts'
 import type { GroupState } from '../model/implied-moments.ts'
+import { standardisation } from '../model/standardisation.ts'
 import type { EstimateResult } from './fit-result.ts'
 
 /**
@@ -114,27 +115,6 @@ function standardError(cell: FreeCell, covariance: Float64Array, q: number): num
     }
   }
   return variance > 0 ? Math.sqrt(variance) : null
-}
-
-/** Multiplier of the completely standardised solution: indicators and factors of unit implied variance. */
-function standardisation({ matrix, row, column }: Place, state: GroupState): number {
-  const { p, m, sigma, c } = state
-  const indicator = (i: number) => Math.sqrt(sigma[i * p + i]!)
-  const factor = (k: number) => Math.sqrt(c[k * m + k]!)
-  switch (matrix) {
-    case 'lambda':
-      return factor(column) / indicator(row)
-    case 'beta':
-      return factor(column) / factor(row)
-    case 'psi':
-      return 1 / (factor(row) * factor(column))
-    case 'theta':
-      return 1 / (indicator(row) * indicator(column))
-    case 'nu':
-      return 1 / indicator(row)
-    case 'alpha':
-      return 1 / factor(row)
-  }
 }
 
 function finite(value: number): number | null {

@@ -64,7 +64,7 @@ describe('reading a CSV file', () => {
     const data = read(file([...ROWS, ' NA ,2,north', '3,-99,south']), { missingCodes: ['NA', ' -99 '] })
     expect([...data.groups[0]!.values.slice(-4)]).toEqual([Number.NaN, 2, 3, Number.NaN])
     expect(data.cautions.find((caution) => caution.code === 'incomplete-rows')?.message).toBe(
-      '2 of 10 rows lack an answer on some indicator; with complete cases they are left out.'
+      '2 of 10 rows lack an answer on some indicator; complete-case estimation leaves them out, full information uses what they answered.'
     )
   })
 

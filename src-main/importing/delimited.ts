@@ -4,7 +4,7 @@
  */
 import { InputError } from '../study/input-error.ts'
 import { didYouMean } from '../study/nearest.ts'
-import type { Caution, DataSet, RowGroup } from '../study/study.ts'
+import type { Caution, DataSet, Estimation, RowGroup } from '../study/study.ts'
 import { digestOf } from './digest.ts'
 import { isDecimalComma, readNumber, whyNoNumber } from './numbers.ts'
 import { checkRows } from './soundness.ts'
@@ -18,6 +18,8 @@ export interface DelimitedOptions {
   group: string | null
   /** Texts that stand for a missing answer, blanks around them ignored. */
   missingCodes: readonly string[]
+  /** What estimation will do about missing answers: complete cases unless said otherwise. */
+  missing?: Estimation['missing']
 }
 
 /** A first look at the columns, without saying yet which are indicators. */
@@ -52,7 +54,7 @@ export function readDelimited(input: Uint8Array | string, options: DelimitedOpti
     const message = `The column "${group}" holds one group only ("${groups[0]!.name}"), so there is nothing to compare across it.`
     cautions.push({ code: 'one-group', message, cell: [group] })
   }
-  const unsound = checkRows(indicators, groups, fileName)
+  const unsound = checkRows(indicators, groups, fileName, options.missing)
   const content = { kind: 'rows' as const, indicators: [...indicators], grouping: group, groups }
   return { ...content, digest: digestOf(content), source: fileName, cautions: [...cautions, ...incomplete(kept), ...unsound] }
 }
@@ -159,7 +161,7 @@ function splitByGroup(kept: readonly Answered[], p: number): RowGroup[] {
 function incomplete(kept: readonly Answered[]): Caution[] {
   const lost = kept.filter((row) => row.answers.some(Number.isNaN)).length
   if (lost === 0) return []
-  const message = `${lost} of ${kept.length} rows lack an answer on some indicator; with complete cases they are left out.`
+  const message = `${lost} of ${kept.length} rows lack an answer on some indicator; complete-case estimation leaves them out, full information uses what they answered.`
   return [{ code: 'incomplete-rows', message, cell: null }]
 }
 

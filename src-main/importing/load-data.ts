@@ -2,18 +2,23 @@
  * The data a plan speaks of, as a checked data set.
  */
 import { InputError } from '../study/input-error.ts'
-import type { DataPlan, DataSet } from '../study/study.ts'
+import type { DataPlan, DataSet, Estimation } from '../study/study.ts'
 import { readDelimited } from './delimited.ts'
 import { summaryDataSet } from './summary.ts'
 
 /**
  * @param readFile bytes of a file; the path is the plan's own word, relative to the plan
+ * @param missing what estimation will do about missing answers: the data must be sound for that
  * @throws InputError when there is no such file, or its content cannot be worked with
  */
-export function loadData(plan: DataPlan, readFile: (path: string) => Uint8Array): DataSet {
+export function loadData(
+  plan: DataPlan,
+  readFile: (path: string) => Uint8Array,
+  missing: Estimation['missing'] = 'complete cases'
+): DataSet {
   if (plan.kind === 'summary') return summaryDataSet(plan)
   const { file, indicators, group, missingCodes } = plan
-  return readDelimited(readBytes(file, readFile), { fileName: file, indicators, group, missingCodes })
+  return readDelimited(readBytes(file, readFile), { fileName: file, indicators, group, missingCodes, missing })
 }
 
 const REASONS: Readonly<Record<string, string>> = {

@@ -2,10 +2,12 @@
  * Can models be fitted to these data at all? Sizes, constants and singular covariances, and what the user should know.
  */
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix'
+import { splitByPattern, unseenPair } from '../statistics/moments/missing-patterns.ts'
 import { completeCaseMoments } from '../statistics/moments/sample-moments.ts'
+import { saturatedMoments } from '../statistics/moments/saturated-em.ts'
 import { InputError } from '../study/input-error.ts'
 import { listed } from '../study/nearest.ts'
-import type { Caution, RowGroup } from '../study/study.ts'
+import type { Caution, Estimation, RowGroup } from '../study/study.ts'
 
 /** Smallest eigenvalue of a correlation matrix that still counts as positive: far above rounding, far below any real data. */
 export const SINGULAR = 1e-10
@@ -13,11 +15,16 @@ export const SINGULAR = 1e-10
 const FEW_CASES = 100
 
 /**
- * The groups' complete cases, which is what complete-case estimation uses.
+ * What estimation will use of each group: its complete cases, or with full information every answer.
  *
  * @throws InputError naming the indicator and group for too few cases, a constant, or an exact linear dependence
  */
-export function checkRows(indicators: readonly string[], groups: readonly RowGroup[], fileName: string): Caution[] {
+export function checkRows(
+  indicators: readonly string[],
+  groups: readonly RowGroup[],
+  fileName: string,
+  missing: Estimation['missing'] = 'complete cases'
+): Caution[] {
   const p = indicators.length
   indicators.forEach((name, j) => {
     const answers = groups.flatMap((group) => answersOf(group, p, j))
@@ -31,7 +38,8 @@ export function checkRows(indicators: readonly string[], groups: readonly RowGro
       })
     }
   })
-  return groups.flatMap((group) => checkGroup(indicators, group, fileName))
+  const check = missing === 'complete cases' ? checkGroup : checkAnswers
+  return groups.flatMap((group) => check(indicators, group, fileName))
 }
 
 function checkGroup(indicators: readonly string[], group: RowGroup, fileName: string): Caution[] {
@@ -40,24 +48,55 @@ function checkGroup(indicators: readonly string[], group: RowGroup, fileName: st
   checkSize(n, p, group.name, fileName)
   const constant = indicators.findIndex((_, j) => isConstant(group, p, j))
   if (constant >= 0) {
-    throw new InputError(`"${indicators[constant]}" is constant among the complete cases${inGroup(group.name)}.`, {
-      where: `${fileName}, column "${indicators[constant]}"`,
-      remedy: 'Its covariances are zero there, so no model can be fitted: leave out the indicator or the group.'
-    })
+    throw constantIn(indicators[constant]!, 'complete cases', group.name, fileName)
   }
-  const { smallest, vector } = smallestEigenvalue(covariance, p)
+  checkRank(indicators, covariance, group.name, fileName)
+  return smallSample(n, group.name)
+}
+
+/** Every answer of a group counts: enough cases, none constant, every pair answered together, unrestricted moments sound. */
+function checkAnswers(indicators: readonly string[], group: RowGroup, fileName: string): Caution[] {
+  const p = indicators.length
+  checkSize(group.n, p, group.name, fileName)
+  const { patterns } = splitByPattern(group.values, p)
+  const pair = unseenPair(patterns, p)
+  if (pair !== null) {
+    const names = [...new Set(pair.map((i) => indicators[i]!))]
+    throw new InputError(
+      `${listed(names)} ${names.length === 1 ? 'has' : 'are answered together by'} fewer than two cases${inGroup(group.name)}.`,
+      {
+        where: `${fileName}, column "${names[0]}"`,
+        remedy: 'No covariance can be estimated from that: leave one of them out of the indicators.'
+      }
+    )
+  }
+  const constant = indicators.findIndex((_, j) => new Set(answersOf(group, p, j)).size < 2)
+  if (constant >= 0) throw constantIn(indicators[constant]!, 'answers', group.name, fileName)
+  checkRank(indicators, saturatedMoments(patterns, p).covariance, group.name, fileName)
+  return smallSample(group.n, group.name)
+}
+
+function constantIn(indicator: string, among: string, group: string | null, fileName: string): InputError {
+  return new InputError(`"${indicator}" is constant among the ${among}${inGroup(group)}.`, {
+    where: `${fileName}, column "${indicator}"`,
+    remedy: 'Its covariances are zero there, so no model can be fitted: leave out the indicator or the group.'
+  })
+}
+
+/** @throws InputError naming the indicators that determine each other exactly */
+function checkRank(indicators: readonly string[], covariance: Float64Array, group: string | null, fileName: string): void {
+  const { smallest, vector } = smallestEigenvalue(covariance, indicators.length)
   if (smallest <= SINGULAR) {
     const most = Math.max(...vector.map(Math.abs))
     const involved = indicators.filter((_, j) => Math.abs(vector[j]!) > 1e-6 * most)
     throw new InputError(
-      `${listed(involved)} determine each other exactly${inGroup(group.name)}: one is a linear combination of the rest.`,
+      `${listed(involved)} determine each other exactly${inGroup(group)}: one is a linear combination of the rest.`,
       {
         where: `${fileName}, column "${involved.at(-1)}"`,
         remedy: 'Leave one of them out of the indicators.'
       }
     )
   }
-  return smallSample(n, group.name)
 }
 
 /** @throws InputError unless there are more cases than indicators */

@@ -1,49 +1,116 @@
 /**
- * The sample moments a candidate is fitted to: the cases complete on every indicator of the study (so that all candidates
- * see the same cases), by group or pooled, reduced to the indicators it uses.
+ * The sample a candidate is fitted to. With complete cases: the moments of the cases complete on every indicator of the
+ * study, so that all candidates see the same cases. With full information: every case that answered any of the candidate's
+ * indicators, by missingness pattern. By group or pooled, reduced to the indicators it uses.
  */
-import { completeCaseMoments, type GroupMoments, type SampleMoments } from '../statistics/moments/sample-moments.ts'
+import { splitByPattern, unseenPair } from '../statistics/moments/missing-patterns.ts'
+import {
+  completeCaseMoments,
+  completeRowValues,
+  type GroupMoments,
+  type SampleMoments
+} from '../statistics/moments/sample-moments.ts'
+import { saturatedMoments } from '../statistics/moments/saturated-em.ts'
 import { InputError } from '../study/input-error.ts'
 import type { DataSet, Estimation, RowGroup, SummaryGroup } from '../study/study.ts'
 
-type Convention = Estimation['convention']
+export interface CandidateSample {
+  moments: SampleMoments
+  /** Per group n x p row-major, the very cases of the moments, NaN where missing; null for published summaries. */
+  rows: Float64Array[] | null
+}
 
-/** Moments of one data set under one convention, made once and cut to size for each candidate. */
-export function momentsSource(
-  data: DataSet,
-  convention: Convention
-): (byGroup: boolean, indicators: readonly string[]) => SampleMoments {
-  const made = new Map<boolean, GroupMoments[]>()
+export type SampleSource = (byGroup: boolean, indicators: readonly string[]) => CandidateSample
+
+/** Samples of one data set under one estimation; each is made once and shared by the candidates that use it. */
+export function sampleSource(data: DataSet, estimation: Pick<Estimation, 'convention' | 'missing'>): SampleSource {
+  const made = new Map<string, CandidateSample>()
   return (byGroup, indicators) => {
-    const whole = made.get(byGroup) ?? wholeMoments(data, convention, byGroup)
-    made.set(byGroup, whole)
-    const at = indicators.map((name) => data.indicators.indexOf(name))
-    return { indicators: [...indicators], groups: whole.map((group) => reduced(group, at, data.indicators.length)) }
+    const key = JSON.stringify([byGroup, indicators])
+    const sample = made.get(key) ?? makeSample(data, estimation, byGroup, indicators)
+    made.set(key, sample)
+    return sample
   }
 }
 
-function wholeMoments(data: DataSet, convention: Convention, byGroup: boolean): GroupMoments[] {
-  if (data.kind === 'rows')
-    return byGroup
-      ? data.groups.map((g) => rowMoments(g, data.indicators.length))
-      : [pooledRows(data.groups, data.indicators.length)]
+function makeSample(
+  data: DataSet,
+  { convention, missing }: Pick<Estimation, 'convention' | 'missing'>,
+  byGroup: boolean,
+  indicators: readonly string[]
+): CandidateSample {
+  const at = indicators.map((name) => data.indicators.indexOf(name))
+  if (data.kind === 'summary') {
+    const groups = summaryGroups(data, convention, byGroup).map((group) => reducedMoments(group, at, data.indicators.length))
+    return { moments: { indicators: [...indicators], groups }, rows: null }
+  }
+  const rows = rowGroups(data.groups, byGroup).map(({ name, values }) => {
+    const kept = missing === 'complete cases' ? completeRowValues(values, data.indicators.length) : values
+    return { name, values: selectColumns(kept, data.indicators.length, at) }
+  })
+  const groups = rows.map(({ name, values }) => {
+    if (missing === 'complete cases') return { name, ...completeCaseMoments(values, at.length) }
+    return patternMoments(name, values, indicators, data.source)
+  })
+  return { moments: { indicators: [...indicators], groups }, rows: rows.map((group) => group.values) }
+}
+
+function patternMoments(name: string | null, values: Float64Array, indicators: readonly string[], source: string): GroupMoments {
+  const p = indicators.length
+  const { patterns, n } = splitByPattern(values, p)
+  const pair = unseenPair(patterns, p)
+  if (pair !== null) {
+    const names = [...new Set(pair.map((i) => `"${indicators[i]}"`))].join(' and ')
+    throw new InputError(
+      `${names}: fewer than two cases answered ${pair[0] === pair[1] ? 'it' : 'both'}${name === null ? '' : ` in ${name}`}.`,
+      {
+        where: source,
+        remedy: 'No covariance can be estimated from that: leave one of them out.'
+      }
+    )
+  }
+  const { mean, covariance, converged } = saturatedMoments(patterns, p)
+  if (!converged) {
+    throw new InputError(
+      `The unrestricted means and covariances could not be estimated${name === null ? '' : ` in ${name}`}: too much is missing.`,
+      {
+        where: source,
+        remedy: 'Use complete cases, or fewer indicators.'
+      }
+    )
+  }
+  return { name, n, mean, covariance, patterns }
+}
+
+function rowGroups(groups: readonly RowGroup[], byGroup: boolean): { name: string | null; values: Float64Array }[] {
+  if (byGroup) return groups.map(({ name, values }) => ({ name, values }))
+  const all = new Float64Array(groups.reduce((sum, g) => sum + g.values.length, 0))
+  let at = 0
+  for (const { values } of groups) {
+    all.set(values, at)
+    at += values.length
+  }
+  return [{ name: null, values: all }]
+}
+
+function selectColumns(values: Float64Array, p: number, at: readonly number[]): Float64Array {
+  const n = values.length / p
+  const out = new Float64Array(n * at.length)
+  for (let row = 0; row < n; row++) {
+    at.forEach((column, k) => {
+      out[row * at.length + k] = values[row * p + column]!
+    })
+  }
+  return out
+}
+
+type Summary = Extract<DataSet, { kind: 'summary' }>
+type Convention = Estimation['convention']
+
+function summaryGroups(data: Summary, convention: Convention, byGroup: boolean): GroupMoments[] {
   const groups = data.groups.map((g) => summaryMoments(g, data.divisor, convention))
   if (byGroup || groups.length === 1) return groups.map((g) => ({ ...g, name: byGroup ? g.name : null }))
   return [pooledSummaries(groups, data)]
-}
-
-function rowMoments(group: RowGroup, p: number): GroupMoments {
-  return { name: group.name, ...completeCaseMoments(group.values, p) }
-}
-
-function pooledRows(groups: readonly RowGroup[], p: number): GroupMoments {
-  const all = new Float64Array(groups.reduce((sum, g) => sum + g.values.length, 0))
-  let at = 0
-  for (const group of groups) {
-    all.set(group.values, at)
-    at += group.values.length
-  }
-  return { name: null, ...completeCaseMoments(all, p) }
 }
 
 /** Brings published covariances to the divisor of the convention: n for normal, n - 1 for Wishart. */
@@ -63,7 +130,7 @@ function pooledSummaries(groups: readonly GroupMoments[], data: DataSet): GroupM
   const covariance = new Float64Array(p * p)
   for (const group of groups) {
     if (group.mean === null) {
-      throw new InputError('groups of published covariances without means cannot be pooled', {
+      throw new InputError('Groups of published covariances without means cannot be pooled.', {
         where: data.source,
         remedy: `Model every candidate across "${data.grouping}", or give the means.`
       })
@@ -80,7 +147,7 @@ function pooledSummaries(groups: readonly GroupMoments[], data: DataSet): GroupM
   return { name: null, n, covariance, mean }
 }
 
-function reduced(group: GroupMoments, at: readonly number[], p: number): GroupMoments {
+function reducedMoments(group: GroupMoments, at: readonly number[], p: number): GroupMoments {
   const k = at.length
   const covariance = new Float64Array(k * k)
   at.forEach((i, a) => {

@@ -8,9 +8,9 @@ import type { Cell, GroupCells, ModelCells } from '../statistics/model/cells.ts'
 import { compileModel } from '../statistics/model/compile.ts'
 import { candidateSentence } from '../study/sentences.ts'
 import type { Bench } from './bench.ts'
-import { momentsSource } from './candidate-moments.ts'
+import { sampleSource } from './candidate-moments.ts'
 import type { CandidateCheck, CellView, GroupCellsView, Operations } from './contract.ts'
-import { cellsOf, familyOf, momentsOf } from './family.ts'
+import { cellsOf, familyOf, sampleOf } from './family.ts'
 
 /** Of the generic points at which identification is judged: the same answer for the same candidate. */
 const seed = 20_260_103
@@ -24,7 +24,7 @@ export function checkCandidate(bench: Bench, { candidate }: Operations['checkCan
   const cells = cellsOf(candidate.name, candidates, plan, project.data())
   const model = compileModel(cells)
   const { parameters, df } = model
-  const moments = momentsOf(cells, momentsSource(project.data(), plan.estimation.convention))
+  const { moments } = sampleOf(cells, sampleSource(project.data(), plan.estimation))
   const unidentified = unidentifiedLabels(model, moments, seededGenerator(seed)).map((label) => labelWords(model, label))
   return {
     parameters,

@@ -6,16 +6,15 @@
 import { createHash } from 'node:crypto'
 import { informationWeights } from '../statistics/comparison/difference-test.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
-import type { SampleMoments } from '../statistics/moments/sample-moments.ts'
 import { ladderRungs } from '../study/ladders.ts'
 import type { CandidateResult, LadderResult, StudyResult } from '../study/result.ts'
 import { addsWords, candidateSentence } from '../study/sentences.ts'
 import type { Candidate, DataSet, LadderPlan, Origin, Plan } from '../study/study.ts'
 import type { Crew, FitOutcome, RelationOutcome } from '../workers/jobs.ts'
-import { momentsSource } from './candidate-moments.ts'
+import { type CandidateSample, sampleSource } from './candidate-moments.ts'
 import type { WorkEvent } from './contract.ts'
 import { completeCases } from './data-summary.ts'
-import { cellsOf, familyOf } from './family.ts'
+import { cellsOf, familyOf, sampleOf } from './family.ts'
 import { ladderResult, type StepGround } from './ladder-result.ts'
 
 /** Fits and proofs already made, by digest; given and added to. A digest covers the model, the data, the settings and the program version. */
@@ -45,7 +44,7 @@ interface Entry {
   candidate: Candidate
   origin: Origin
   cells: ModelCells
-  moments: SampleMoments
+  sample: CandidateSample
   digest: string
 }
 
@@ -84,15 +83,14 @@ function isWanted(candidate: Candidate, names: string[] | null, generated: Reado
 
 function entriesOf(input: CompareInput, candidates: Candidate[], origins: ReadonlyMap<string, Origin>): Entry[] {
   const { plan, data, version } = input
-  const moments = momentsSource(data, plan.estimation.convention)
+  const samples = sampleSource(data, plan.estimation)
   return candidates.map((candidate) => {
     const cells = cellsOf(candidate.name, candidates, plan, data)
-    const byGroup = cells.groups.some((g) => g.name !== null)
     return {
       candidate,
       origin: origins.get(candidate.name) ?? 'planned',
       cells,
-      moments: moments(byGroup, cells.indicators),
+      sample: sampleOf(cells, samples),
       digest: digestOf({ cells, data: data.digest, estimation: plan.estimation, version })
     }
   })
@@ -105,19 +103,21 @@ function digestOf(content: object): string {
 
 async function fitAll(input: CompareInput, entries: Entry[], crew: Crew, { onWork, signal }: CompareOptions): Promise<void> {
   const { memory, plan } = input
+  const { convention, standardErrors, statistic } = plan.estimation
+  const casewise = standardErrors === 'robust' || statistic === 'mean-scaled'
   const open = new Map(entries.filter((e) => !memory.fits.has(e.digest)).map((e) => [e.digest, e]))
   const total = open.size
   let done = 0
   const started = performance.now()
   onWork?.({ kind: 'started', total })
-  const work = [...open.values()].map(async ({ candidate, cells, moments, digest }) => {
+  const work = [...open.values()].map(async ({ candidate, cells, sample, digest }) => {
     const job = {
       kind: 'fit' as const,
       candidate: candidate.name,
       cells,
-      moments,
-      settings: { convention: plan.estimation.convention },
-      rows: null
+      moments: sample.moments,
+      settings: { convention, standardErrors, statistic },
+      rows: casewise ? sample.rows : null
     }
     const outcome = await crew.fit(job, signal)
     memory.fits.set(digest, outcome)
@@ -222,7 +222,7 @@ async function relate(
       generalGamma: general.gamma,
       restricted: upper.cells,
       restrictedGamma: restricted.gamma,
-      sizes: lower.moments.groups.map((g) => g.n)
+      sizes: lower.sample.moments.groups.map((g) => g.n)
     },
     signal
   )

@@ -3,12 +3,11 @@
  */
 import type { ModelCells } from '../statistics/model/cells.ts'
 import { compileModel } from '../statistics/model/compile.ts'
-import type { SampleMoments } from '../statistics/moments/sample-moments.ts'
 import { candidateCells, resolveCandidate } from '../study/candidate-model.ts'
 import { ladderCandidates } from '../study/ladders.ts'
 import { checkPlan, checkPlanAgainstData } from '../study/plan-references.ts'
 import type { Candidate, DataSet, Origin, Plan } from '../study/study.ts'
-import { momentsSource } from './candidate-moments.ts'
+import { type CandidateSample, type SampleSource, sampleSource } from './candidate-moments.ts'
 
 export interface Family {
   /** Written ones in the plan's order, then generated ones ladder by ladder, bottom first. */
@@ -49,8 +48,8 @@ export function cellsOf(name: string, family: readonly Candidate[], plan: Plan, 
   })
 }
 
-/** The moments that these cells are fitted to: by group where the model has named groups, else of all cases together. */
-export function momentsOf(cells: ModelCells, source: ReturnType<typeof momentsSource>): SampleMoments {
+/** The sample that these cells are fitted to: by group where the model has named groups, else of all cases together. */
+export function sampleOf(cells: ModelCells, source: SampleSource): CandidateSample {
   return source(
     cells.groups.some((group) => group.name !== null),
     cells.indicators
@@ -67,11 +66,11 @@ export function checkFamily(plan: Plan, data: DataSet): void {
   checkPlan(plan, placeIn(plan))
   checkPlanAgainstData(plan, data)
   const { candidates } = familyOf(plan)
-  const moments = momentsSource(data, plan.estimation.convention)
+  const samples = sampleSource(data, plan.estimation)
   for (const { name } of candidates) {
     const cells = cellsOf(name, candidates, plan, data)
     compileModel(cells)
-    momentsOf(cells, moments)
+    sampleOf(cells, samples)
   }
 }
 

@@ -6,8 +6,8 @@ import { basename, dirname, resolve } from 'node:path'
 import { loadData } from '../importing/load-data.ts'
 import { createInMemoryProject, openProjectFile, type Project } from '../project/project.ts'
 import { InputError } from '../study/input-error.ts'
-import { parsePlan, refuseUnavailable } from '../study/plan-file.ts'
-import type { DataPlan, DataSet, Plan } from '../study/study.ts'
+import { parsePlan } from '../study/plan-file.ts'
+import type { DataSet, Plan } from '../study/study.ts'
 import type { Bench, ReadFile } from './bench.ts'
 import type { Operations, StudyView } from './contract.ts'
 import { checkFamily } from './family.ts'
@@ -27,7 +27,7 @@ export interface ReadPlan {
 export async function readPlanFile(path: string, readFile: ReadFile): Promise<ReadPlan> {
   const plan = parsePlan(asText(await readFile(path), path), path)
   const folder = dirname(resolve(path))
-  const data = await readData(plan.data, folder, readFile)
+  const data = await readData(plan, folder, readFile)
   checkFamily(plan, data)
   return { plan, data, folder }
 }
@@ -50,7 +50,6 @@ export async function openProject(bench: Bench, { path }: Operations['openProjec
 
 export async function newStudy(bench: Bench, input: Operations['newStudy']['input']): Promise<StudyView> {
   const { study, path, indicators, group, missingCodes, estimation, rules } = input
-  refuseUnavailable(estimation)
   const folder = dirname(resolve(path))
   const plan: Plan = {
     study,
@@ -60,7 +59,7 @@ export async function newStudy(bench: Bench, input: Operations['newStudy']['inpu
     ladders: [],
     rules
   }
-  const data = await readData(plan.data, folder, bench.parts.readFile)
+  const data = await readData(plan, folder, bench.parts.readFile)
   checkFamily(plan, data)
   return bench.replace(projectOf({ plan, data, folder }, bench))
 }
@@ -79,9 +78,9 @@ function projectOf({ plan, data, folder }: ReadPlan, bench: Bench): Project {
   return project
 }
 
-async function readData(plan: DataPlan, folder: string, readFile: ReadFile): Promise<DataSet> {
-  const bytes = plan.kind === 'file' ? await readFile(resolve(folder, plan.file)) : new Uint8Array()
-  return loadData(plan, () => bytes)
+async function readData({ data, estimation }: Plan, folder: string, readFile: ReadFile): Promise<DataSet> {
+  const bytes = data.kind === 'file' ? await readFile(resolve(folder, data.file)) : new Uint8Array()
+  return loadData(data, () => bytes, estimation.missing)
 }
 
 function asText(bytes: Uint8Array, path: string): string {

@@ -96,9 +96,9 @@ describe('opening', () => {
     const view = await done(workbench, 'newStudy', input)
     expect(view).toMatchObject({ study: 'Two ears', candidates: [], ladders: [], rules: { alpha: 0.01 } })
     expect(await refused(workbench, 'newStudy', { ...input, indicators: ['hum', 'buzz'] })).toMatch(/buzz/)
-    expect(
-      await refused(workbench, 'newStudy', { ...input, estimation: { ...input.estimation, statistic: 'mean-scaled' } })
-    ).toMatch(/not available yet/)
+    expect(await refused(workbench, 'newStudy', { ...input, estimation: { ...input.estimation, convention: 'wishart' } })).toMatch(
+      /wishart/
+    )
     await workbench.close()
   })
 })

@@ -1,7 +1,7 @@
 import { readFileSync } from 'node:fs'
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
-import { parsePlan, refuseUnavailable, writePlan } from './plan-file.ts'
+import { parsePlan, writePlan } from './plan-file.ts'
 import { type Candidate, type Change, cellPartSchema, type DataPlan, equalSets, estimationSchema, type Plan } from './study.ts'
 
 const SMALL = 'study: s\ndata: { file: a.csv, indicators: [a, b, c] }\ncandidates:\n  One:\n    factors: { F: [a, b, c] }\n'
@@ -116,11 +116,11 @@ candidates:
     )
   })
 
-  it('says what this version cannot do yet', () => {
-    expect(() => refuseUnavailable(estimationSchema.parse({ statistic: 'mean-scaled' }))).toThrow(
-      '"statistic: mean-scaled" is not available yet'
-    )
-    expect(() => refuseUnavailable(estimationSchema.parse({}))).not.toThrow()
+  it('takes errors from the observed information with full information, unless told otherwise', () => {
+    const errors = (estimation: string) => parsePlan(`${SMALL}estimation: ${estimation}\n`, 'p').estimation.standardErrors
+    expect(errors('{ missing: full information }')).toBe('observed')
+    expect(errors('{ missing: full information, standard errors: expected }')).toBe('expected')
+    expect(errors('{ statistic: mean-scaled }')).toBe('expected')
   })
 })
 

@@ -3,7 +3,6 @@
  *
  * `parsePlan(writePlan(plan))` is `plan` again for every plan that `parsePlan` can yield.
  */
-import { InputError } from './input-error.ts'
 import { readCandidates } from './plan-candidates.ts'
 import { readData } from './plan-data.ts'
 import { PlanNodes, type Spot } from './plan-nodes.ts'
@@ -42,41 +41,29 @@ export function parsePlan(text: string, fileName: string): Plan {
     rules: rules === undefined ? rulesSchema.parse({}) : readRules(nodes, rules)
   }
   const checked = planSchema.parse(plan)
-  refuseUnavailable(checked.estimation, (path) => nodes.placeOf(path))
   checkPlan(checked, (path) => nodes.placeOf(path))
   return checked
 }
 
-/**
- * What a plan may ask for but this version cannot do yet.
- *
- * @throws InputError saying so
- */
-export function refuseUnavailable(estimation: Estimation, placeOf: (path: string) => string | null = () => null): void {
-  const refuse = (key: string, value: string, remedy: string): never => {
-    throw new InputError(`"${key}: ${value}" is not available yet in this version.`, {
-      where: placeOf(`estimation.${key}`),
-      remedy
-    })
-  }
-  if (estimation.statistic !== 'normal theory') refuse('statistic', estimation.statistic, 'Use "normal theory".')
-  if (estimation.missing !== 'complete cases') refuse('missing', estimation.missing, 'Use "complete cases".')
-  if (estimation.standardErrors !== 'expected') refuse('standard errors', estimation.standardErrors, 'Use "expected".')
-}
-
 function readEstimation(nodes: PlanNodes, spot: Spot): Estimation {
   const fields = nodes.fields(spot, 'The estimation', ['method', 'convention', 'statistic', 'missing', 'standard errors'])
-  const word = <T extends string>(key: string, words: readonly [T, ...T[]]): T => {
+  const word = <T extends string>(key: string, words: readonly [T, ...T[]], otherwise: T = words[0]): T => {
     const value = fields.get(key)
     if (value !== undefined) nodes.mark(`estimation.${key}`, value)
-    return value === undefined ? words[0] : nodes.word(value, `The ${key}`, words)
+    return value === undefined ? otherwise : nodes.word(value, `The ${key}`, words)
   }
+  const missing = word('missing', ['complete cases', 'full information'])
   return {
     method: word('method', ['maximum likelihood']),
     convention: word('convention', ['normal', 'wishart']),
     statistic: word('statistic', ['normal theory', 'mean-scaled']),
-    missing: word('missing', ['complete cases', 'full information']),
-    standardErrors: word('standard errors', ['expected', 'observed', 'robust'])
+    missing,
+    // With missing answers the expected information asks more of them than full information itself does (methods: section 3).
+    standardErrors: word(
+      'standard errors',
+      ['expected', 'observed', 'robust'],
+      missing === 'full information' ? 'observed' : 'expected'
+    )
   }
 }
 

@@ -9,7 +9,7 @@ import { ladderCandidates } from './ladders.ts'
 import { didYouMean } from './nearest.ts'
 import { checkCandidate } from './plan-candidate-checks.ts'
 import { acrossOf, checkGrouping, type Fail, hasMeans, lineageOf } from './plan-context.ts'
-import type { Candidate, DataSet, LadderPlan, Plan } from './study.ts'
+import type { Candidate, DataSet, Estimation, LadderPlan, Plan } from './study.ts'
 
 export type PlaceOf = (path: string) => string | null
 
@@ -80,12 +80,26 @@ function checkData(plan: Plan, fail: Fail): void {
   if (data.kind === 'file' && data.group !== null && data.indicators.includes(data.group)) {
     fail('data.group', `"${data.group}" is an indicator and the grouping.`, 'A column can be one of the two.')
   }
+  if (data.kind === 'summary') checkSummaryEstimation(estimation, fail)
   if (estimation.convention !== 'wishart') return
   const remedy = 'It is for published covariances without means (covariances only); use "convention: normal" here.'
   if (data.kind === 'file') fail('estimation.convention', 'The wishart convention does not go with a file of raw data.', remedy)
   if (data.kind === 'summary' && data.groups.some((group) => group.mean !== null)) {
     fail('estimation.convention', 'The wishart convention does not go with means.', remedy)
   }
+}
+
+/** Published covariances say nothing case by case. */
+function checkSummaryEstimation(estimation: Estimation, fail: Fail): void {
+  const refuse = (key: string, value: string, instead: string) =>
+    fail(
+      `estimation.${key}`,
+      `"${key}: ${value}" needs the answers themselves, and published covariances have none.`,
+      `Use "${instead}".`
+    )
+  if (estimation.statistic !== 'normal theory') refuse('statistic', estimation.statistic, 'normal theory')
+  if (estimation.missing !== 'complete cases') refuse('missing', estimation.missing, 'complete cases')
+  if (estimation.standardErrors === 'robust') refuse('standard errors', estimation.standardErrors, 'expected')
 }
 
 function checkLadder(plan: Plan, ladder: LadderPlan, fail: Fail): void {

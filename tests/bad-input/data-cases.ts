@@ -122,6 +122,18 @@ const inFiles: BadInput[] = [
 ]
 
 const inSummaries: BadInput[] = [
+  ...[
+    ['statistic', 'mean-scaled'],
+    ['missing', 'full information'],
+    ['standard errors', 'robust']
+  ].map(([key, value]) =>
+    summary(
+      `${value} on a published summary`,
+      'candidates:',
+      `estimation: { ${key}: ${value} }\ncandidates:`,
+      `"${key}: ${value}" needs the answers themselves, and published covariances have none.`
+    )
+  ),
   summary('no divisor', '  divisor: n\n', '', 'The divisor of the covariances is not given.'),
   summary('an unknown divisor', 'divisor: n', 'divisor: N-1', 'The divisor cannot be "N-1". Did you mean "n-1"?'),
   summary('missing codes beside a summary', 'divisor: n', 'missing codes: [NA]', '"missing codes" does not go with "summary".'),

@@ -311,21 +311,6 @@ const inTheRest: BadInput[] = [
   added('an unknown rule', 'rules: { alfa: 0.05 }\n', 'Unknown key "alfa" in the rules. The nearest known key is "alpha"'),
   added('an unknown method', 'estimation: { method: least squares }\n', 'The method cannot be "least squares".'),
   added(
-    'the mean-scaled statistic',
-    'estimation: { statistic: mean-scaled }\n',
-    '"statistic: mean-scaled" is not available yet in this version.'
-  ),
-  added(
-    'full information',
-    'estimation: { missing: full information }\n',
-    'line 11, column 24: "missing: full information" is not available yet in this version.'
-  ),
-  added(
-    'robust standard errors',
-    'estimation: { standard errors: robust }\n',
-    '"standard errors: robust" is not available yet in this version.'
-  ),
-  added(
     'the wishart convention with raw data',
     'estimation: { convention: wishart }\n',
     'The wishart convention does not go with a file of raw data.'

@@ -61,7 +61,7 @@ function smallestPivot(factor: Float64Array, q: number): number {
 export function unidentifiedLabels(model: CompiledModel, moments: SampleMoments, generator: Generator): string[] {
   const q = model.parameters
   const start = startingValues(model, moments)
-  const objective = normalObjective(model, moments, 'normal')
+  const objective = normalObjective(model, withoutPatterns(moments), 'normal')
   const gradient = new Float64Array(q)
   const curvature = new Float64Array(q * q)
   let common: Set<number> | null = null
@@ -74,6 +74,11 @@ export function unidentifiedLabels(model: CompiledModel, moments: SampleMoments,
     common = new Set(found.filter((k) => common === null || common.has(k)))
   }
   return [...(common ?? [])].map((k) => model.gammaLabels[k]!)
+}
+
+/** What is missing in these data has no part in whether any data could identify the model. */
+function withoutPatterns(moments: SampleMoments): SampleMoments {
+  return { ...moments, groups: moments.groups.map(({ name, n, covariance, mean }) => ({ name, n, covariance, mean })) }
 }
 
 /** Starting values moved so that nothing is zero or equal by symmetry: residual covariances, cross-loadings and means too. */

@@ -61,6 +61,16 @@ export function completeCaseMoments(values: Float64Array, p: number): { n: numbe
   return { n, mean, covariance }
 }
 
+/** The rows without a missing value, n x p, in order. */
+export function completeRowValues(values: Float64Array, p: number): Float64Array {
+  const starts = completeRows(values, p)
+  const out = new Float64Array(starts.length * p)
+  starts.forEach((start, row) => {
+    out.set(values.subarray(start, start + p), row * p)
+  })
+  return out
+}
+
 /** Offsets into `values` of the rows without NaN. */
 function completeRows(values: Float64Array, p: number): number[] {
   const starts: number[] = []

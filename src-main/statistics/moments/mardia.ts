@@ -3,9 +3,12 @@
  *
  *     b1 = 1/n^2 sum_i sum_j (e_i' S^-1 e_j)^3      b2 = 1/n sum_i (e_i' S^-1 e_i)^2      e = y - ybar, S of divisor n
  *
+ * The tests use the moments of b1 and b2 that are exact for normal samples of the size at hand. The large-sample forms are
+ * kept beside them, but in small samples they overlook heavy tails: with 30 rows of 7 indicators b2 averages 58.9, not 63.
+ *
  * Kurtosis costs O(n p^2 + p^3). Skewness is the sum of squares of the third cross-moments of the whitened rows, O(n p^3 / 6)
- * by those moments or O(n^2 p / 2) by pairs of rows, whichever is less; no exact way in O(n p^2) is known. (10,000 rows of
- * 40 indicators take a fraction of a second; 120 indicators some seconds.)
+ * by those moments or O(n^2 p / 2) by pairs of rows, whichever is less; no exact way in O(n p^2) is known. (Measured: 10,000
+ * rows take 0.13 s with 40 indicators, 1.1 s with 80, 4.3 s with 120.)
  */
 import { chiSquareUpper } from '../distributions/chi-square.ts'
 import { normalUpper } from '../distributions/normal.ts'
@@ -198,7 +201,8 @@ export function mardiaSentence(groups: readonly { name: string | null; result: M
   if (heavy.length === 0 && light.length === 0) {
     const skewedToo =
       skewed.length > 0 ? ` The answers are skewed${where(skewed)}, which by itself disturbs these tests little.` : ''
-    return `Multivariate kurtosis does not depart detectably from that of normal data (${kurtosisFigures(known)}): the ordinary test statistic and standard errors can be used.${skewedToo}`
+    const shared = known.length > 1 ? `; a level of .05 shared among ${known.length} groups` : ''
+    return `Multivariate kurtosis does not depart detectably from that of normal data (${kurtosisFigures(known)}${shared}): the ordinary test statistic and standard errors can be used.${skewedToo}`
   }
   const sentences = [
     ...(heavy.length > 0

@@ -5,55 +5,8 @@
 import { describe, expect, it } from 'vitest'
 import { fitModel } from '../../src-main/statistics/fit/fit.ts'
 import { compileModel } from '../../src-main/statistics/model/compile.ts'
-import { splitByPattern } from '../../src-main/statistics/moments/missing-patterns.ts'
-import type { SampleMoments } from '../../src-main/statistics/moments/sample-moments.ts'
-import { saturatedMoments } from '../../src-main/statistics/moments/saturated-em.ts'
 import { type Example, exampleCells, readExample } from './examples.ts'
-
-interface MissingExpected {
-  T: number
-  df: number
-  p: number
-  loglik: number
-  loglik_unrestricted: number
-  AIC: number
-  BIC: number
-  SABIC: number
-  cfi: number
-  tli: number
-  rmsea: number
-  ci90_lower: number
-  ci90_upper: number
-  p_close_05: number
-  srmr_without_means_against_EM_moments: number
-  srmr_with_means_against_EM_moments: number
-  n_free_parameters: number
-  estimates: Record<string, { est: number; se_observed: number; se_sandwich: number }>
-  yuan_bentler_scaling_factors: Record<string, number>
-  yuan_bentler_scaled_T: Record<string, { T: number; p: number }>
-}
-interface MissingExample {
-  data: { variables: string[]; raw?: (number | null)[][]; groups?: { name: string; raw: (number | null)[][] }[] }
-  models: Example['models']
-  expected: Record<string, MissingExpected> & { baseline: { T: number; df: number } }
-}
-
-function rowsOf({ data }: MissingExample): { name: string | null; values: Float64Array }[] {
-  const groups = data.groups ?? [{ name: null, raw: data.raw! }]
-  return groups.map(({ name, raw }) => ({ name, values: Float64Array.from(raw.flatMap((row) => row.map((x) => x ?? Number.NaN))) }))
-}
-
-function momentsOf(example: MissingExample): SampleMoments {
-  const p = example.data.variables.length
-  return {
-    indicators: example.data.variables,
-    groups: rowsOf(example).map(({ name, values }) => {
-      const { patterns, n } = splitByPattern(values, p)
-      const { mean, covariance } = saturatedMoments(patterns, p)
-      return { name, n, patterns, mean, covariance }
-    })
-  }
-}
+import { type MissingExample, momentsWithPatterns, rowsOf } from './missing-examples.ts'
 
 const near = (actual: number | null, expected: number, tolerance: number, what: string) =>
   expect(Math.abs(actual! - expected), `${what}: ${actual} for ${expected}`).toBeLessThanOrEqual(
@@ -62,7 +15,7 @@ const near = (actual: number | null, expected: number, tolerance: number, what: 
 
 for (const file of ['03a_airquality_fiml_one_factor.json', '03b_simulated_missing_multigroup.json']) {
   const example = readExample<MissingExample>(file)
-  const moments = momentsOf(example)
+  const moments = momentsWithPatterns(example)
   const rows = rowsOf(example).map((g) => g.values)
   describe(file, () => {
     for (const name of Object.keys(example.models)) {

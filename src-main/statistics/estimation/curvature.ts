@@ -41,8 +41,8 @@ export function addExpectedCurvature(work: GroupWork, curvature: Float64Array, q
   }
 }
 
-/** Adds this group's observed second derivatives; the gradient must have been made before. */
-export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q: number): void {
+/** Adds this group's observed second derivatives, with or without those of Sigma and mu themselves; the gradient must have been made before. */
+export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q: number, secondOrder: boolean): void {
   const { p, size, u, v, c, s, meanWeight, columns } = work
   const gram = new Float64Array(size * size)
   const square = new Float64Array(size * size)
@@ -68,6 +68,7 @@ export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q
       }
     }
   }
+  if (!secondOrder) return
   addSecondOrder(work, (i, j, value) => {
     addPair(work, curvature, q, i, j, work.weight * value)
   })

@@ -24,7 +24,8 @@ import type { GroupWork, PatternWork } from './work.ts'
 export { cellColumns } from './cell-columns.ts'
 
 export type Convention = 'normal' | 'wishart'
-export type CurvatureKind = 'expected' | 'observed'
+/** tangent: observed, but with the second derivatives of the moments themselves left out (Delta' A Delta of scaling-missing.ts). */
+export type CurvatureKind = 'expected' | 'observed' | 'tangent'
 
 /** F of one model on one set of moments, as the optimiser sees it. Not re-entrant: its work space is shared by all calls. */
 export interface Objective {
@@ -80,8 +81,10 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
       for (const work of groups) addGradient(work, gradient)
       if (curvature === undefined) return
       curvature.fill(0)
-      const add = kind === 'expected' ? addExpectedCurvature : addObservedCurvature
-      for (const work of groups) add(work, curvature, model.parameters)
+      for (const work of groups) {
+        if (kind === 'expected') addExpectedCurvature(work, curvature, model.parameters)
+        else addObservedCurvature(work, curvature, model.parameters, kind === 'observed')
+      }
     }
   }
 }

@@ -33,7 +33,7 @@ export function isDetermined({ information, left }: Pick<ReleaseScore, 'informat
 }
 
 const smallestBatch = 64
-const largestBatch = 512
+const largestBatch = 1024
 
 /**
  * @param gamma the model's solution (q)
@@ -197,17 +197,28 @@ function factored(curvature: Float64Array, size: number, q: number): Factor | nu
 }
 
 /**
- * Solves l x = b in place of `x`. Rows that b and the solution so far do not reach are passed over: a cell of one group
- * meets that group's parameters and the shared ones at the end, not those of other groups.
+ * Solves l x = b in place of `x`. Where b and the solution so far do not reach, nothing is done: a cell of one group meets
+ * that group's parameters and the shared ones at the end, so x is zero in one long gap between them.
  */
 function forwardSolve({ q, l, first }: Factor, x: Float64Array): void {
   let start = 0
   while (start < q && x[start] === 0) start++
   let last = -1
+  let gap = q
+  let gapEnd = q
   for (let i = start; i < q; i++) {
     const from = Math.max(first[i]!, start)
     if (last < from && x[i] === 0) continue
-    x[i] = (x[i]! - dotRows(l, i * q + from, x, from, i - from)) / l[i * q + i]!
+    if (i - last - 1 > gapEnd - gap && last >= 0) {
+      gap = last + 1
+      gapEnd = i
+    }
+    const at = i * q
+    const dot =
+      from < gap && gapEnd <= i
+        ? dotRows(l, at + from, x, from, gap - from) + dotRows(l, at + gapEnd, x, gapEnd, i - gapEnd)
+        : dotRows(l, at + from, x, from, i - from)
+    x[i] = (x[i]! - dot) / l[at + i]!
     if (x[i] !== 0) last = i
   }
 }

@@ -3,18 +3,16 @@
  *
  *     family -> cells and moments of each candidate -> fits (by the crew) -> relations of adjacent rungs -> result
  */
-import { createHash } from 'node:crypto'
 import { informationWeights } from '../statistics/comparison/difference-test.ts'
-import type { ModelCells } from '../statistics/model/cells.ts'
 import { ladderRungs } from '../study/ladders.ts'
 import type { CandidateResult, LadderResult, StudyResult } from '../study/result.ts'
 import { addsWords, candidateSentence } from '../study/sentences.ts'
 import type { Candidate, DataSet, LadderPlan, Origin, Plan } from '../study/study.ts'
 import type { Crew, FitOutcome, RelationOutcome } from '../workers/jobs.ts'
-import { type CandidateSample, sampleSource } from './candidate-moments.ts'
 import type { WorkEvent } from './contract.ts'
-import { completeCases } from './data-summary.ts'
-import { cellsOf, familyOf, sampleOf } from './family.ts'
+import { dataSummary } from './data-summary.ts'
+import { digestOf, type Entry, entriesOf } from './entries.ts'
+import { familyOf } from './family.ts'
 import { ladderResult, type StepGround } from './ladder-result.ts'
 
 /** Fits and proofs already made, by digest; given and added to. A digest covers the model, the data, the settings and the program version. */
@@ -39,19 +37,10 @@ export interface CompareOptions {
   signal?: AbortSignal
 }
 
-/** One candidate ready to be fitted. */
-interface Entry {
-  candidate: Candidate
-  origin: Origin
-  cells: ModelCells
-  sample: CandidateSample
-  digest: string
-}
-
 /** Throws InputError for a candidate that makes no model, and the signal's reason when it aborts; finished fits are in `memory` by then. */
 export async function compareStudy(input: CompareInput, crew: Crew, options: CompareOptions = {}): Promise<StudyResult> {
   const family = familyOf(input.plan, input.origins)
-  const entries = entriesOf(input, family.candidates, family.origins)
+  const entries = entriesOf(input.plan, input.data, input.version, family)
   await fitAll(
     input,
     entries.filter((entry) => isWanted(entry.candidate, input.names, family.generated)),
@@ -65,12 +54,7 @@ export async function compareStudy(input: CompareInput, crew: Crew, options: Com
   return {
     study: input.plan.study,
     program: { name: 'rungwise', version: input.version },
-    data: {
-      digest: input.data.digest,
-      indicators: input.data.indicators,
-      groups: completeCases(input.data),
-      cautions: input.data.cautions
-    },
+    data: dataSummary(input.data, input.plan.estimation),
     candidates: results,
     ladders
   }
@@ -79,26 +63,6 @@ export async function compareStudy(input: CompareInput, crew: Crew, options: Com
 function isWanted(candidate: Candidate, names: string[] | null, generated: ReadonlySet<string>): boolean {
   if (names === null || names.includes(candidate.name)) return true
   return generated.has(candidate.name) && candidate.from !== null && names.includes(candidate.from)
-}
-
-function entriesOf(input: CompareInput, candidates: Candidate[], origins: ReadonlyMap<string, Origin>): Entry[] {
-  const { plan, data, version } = input
-  const samples = sampleSource(data, plan.estimation)
-  return candidates.map((candidate) => {
-    const cells = cellsOf(candidate.name, candidates, plan, data)
-    return {
-      candidate,
-      origin: origins.get(candidate.name) ?? 'planned',
-      cells,
-      sample: sampleOf(cells, samples),
-      digest: digestOf({ cells, data: data.digest, estimation: plan.estimation, version })
-    }
-  })
-}
-
-/** SHA-256 over the JSON text; keys are written in the order the code makes them, so equal content gives equal text. */
-function digestOf(content: object): string {
-  return `sha256:${createHash('sha256').update(JSON.stringify(content)).digest('hex')}`
 }
 
 async function fitAll(input: CompareInput, entries: Entry[], crew: Crew, { onWork, signal }: CompareOptions): Promise<void> {

@@ -6,7 +6,7 @@
  */
 
 import type { FitState, StudyResult } from '../study/result.ts'
-import type { Candidate, Caution, Estimation, LadderPlan, Origin, Rules } from '../study/study.ts'
+import type { Candidate, Caution, CellPart, Estimation, LadderPlan, Origin, Rules } from '../study/study.ts'
 
 export type * from '../study/result.ts'
 export type * from '../study/study.ts'
@@ -135,6 +135,28 @@ export type WorkEvent =
   | { kind: 'fitted'; candidate: string; state: FitState; done: number; total: number; secondsLeft: number | null }
   | { kind: 'finished'; cancelled: boolean }
 
+/** One fixed cell or equality of a fitted candidate, and what releasing it would do: exploratory, for it looks at the results. */
+export interface ScoreTestView {
+  kind: 'fixed cell' | 'equality' | 'constraint'
+  part: CellPart
+  of: string[]
+  group: string | null
+  /** The letter of the equality, the equation of a constraint, null for a fixed cell. */
+  label: string | null
+  /** The cell in words. */
+  words: string
+  /** Expected drop in T, on one degree of freedom, and its p. */
+  statistic: number
+  p: number
+  /** Expected change of the cell when it is released (from an equality: the distance from the value of the others), raw and completely standardised. */
+  change: number
+  /** What the estimate is expected to be then; null for a constraint. */
+  expectedValue: number | null
+  standardizedChange: number | null
+  /** stated: somebody chose it; near: what is often overlooked; far: the rest. The order of the list. */
+  plausibility: 'stated' | 'near' | 'far'
+}
+
 /** Every call: its input and its result. A call without input takes `null`. */
 export interface Operations {
   currentStudy: { input: null; result: StudyView | null }
@@ -163,6 +185,8 @@ export interface Operations {
   /** Fits the named candidates, or (null) all that are drafts, and what their ladders generate. */
   fitCandidates: { input: { names: string[] | null }; result: StudyView }
   cancelWork: { input: null; result: null }
+  /** Score tests of a fitted candidate, plausible releases first. */
+  scoreTests: { input: { candidate: string }; result: { tests: ScoreTestView[]; leftOut: number } }
   recordDecision: { input: { ladder: string; rung: string; reason: string }; result: StudyView }
   saveProject: { input: { path: string }; result: StudyView }
   exportPlan: { input: { path: string }; result: { path: string } }

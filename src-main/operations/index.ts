@@ -15,6 +15,7 @@ import { cancelWork, fitCandidates } from './fit-candidates.ts'
 import { currentStudy, newStudy, openPlan, openProject, openSample } from './open-study.ts'
 import { recordDecision } from './record-decision.ts'
 import { exportPlan, exportResult, saveProject } from './save-and-export.ts'
+import { scoreTests } from './score-tests.ts'
 
 export interface Workbench {
   /** @throws whatever is not bad input: an unknown name, a bug */
@@ -68,6 +69,7 @@ const operations: { readonly [N in OperationName]: Operation<N> } = {
   changeRules: { input: z.strictObject({ rules: rulesSchema }), run: changeRules },
   fitCandidates: { input: z.strictObject({ names: z.array(words).nullable() }), run: fitCandidates },
   cancelWork: { input: nothing, run: cancelWork },
+  scoreTests: { input: z.strictObject({ candidate: words }), run: scoreTests },
   recordDecision: { input: z.strictObject({ ladder: words, rung: words, reason: words }), run: recordDecision },
   saveProject: { input: path, run: saveProject },
   exportPlan: { input: path, run: exportPlan },

@@ -36,6 +36,7 @@ function side(name: string, T: number, df: number, more: Partial<CandidateResult
     rmsea: { estimate: Math.sqrt(Math.max(0, T - df) / (df * 500)), lower: null, upper: null, closeFitP: null, notCloseFitP: null },
     srmr: 0.02 + T / 5000,
     srmrWithMeans: null,
+    plugIn: null,
     standardErrors: 'expected',
     estimates: [],
     residuals: null,

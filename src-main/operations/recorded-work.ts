@@ -66,6 +66,7 @@ function watchedCrew(crew: Crew): WatchedCrew {
         relationJobs.set(outcome, job)
         return outcome
       },
+      scoreTests: (job, signal) => crew.scoreTests(job, signal),
       close: () => crew.close()
     }
   }

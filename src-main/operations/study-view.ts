@@ -29,8 +29,8 @@ export async function studyView(project: Project, crew: Crew, version: string): 
       indicators: data.indicators,
       grouping: data.grouping,
       groups: result.data.groups,
-      missing: missingAnswers(data),
-      cautions: data.cautions
+      missing: result.data.missing.values,
+      cautions: result.data.cautions
     },
     candidates: family.candidates.map((candidate) => candidateView(candidate, fitted.get(candidate.name), family, plan, data)),
     ladders: plan.ladders,
@@ -62,12 +62,4 @@ function candidateView(
 function draftCounts(name: string, family: Family, plan: Plan, data: DataSet): { parameters: number; df: number } {
   const model = compileModel(cellsOf(name, family.candidates, plan, data))
   return { parameters: model.parameters, df: model.df }
-}
-
-function missingAnswers(data: DataSet): number {
-  if (data.kind === 'summary') return 0
-  return data.groups.reduce(
-    (sum, group) => sum + group.values.reduce((count, value) => count + (Number.isNaN(value) ? 1 : 0), 0),
-    0
-  )
 }

@@ -93,6 +93,7 @@ export function smallOutcome(changes: Partial<FitOutcome['fit']> = {}): FitOutco
     rmsea: { estimate: none, lower: none, upper: none, closeFitP: none, notCloseFitP: none },
     srmr: none,
     srmrWithMeans: none,
+    plugIn: null,
     standardErrors: 'expected',
     estimates: [],
     residuals: none,

@@ -226,7 +226,10 @@ class CellBuilder {
         if (scaling === 'first loading') this.fixReference(factor, g)
         if (scaling === 'factor variance' && !(g > 0 && this.anyHeld(factor, g)))
           this.node('factor variance', [factor.name], g)!.fixed = 1
-        if (scaling === 'effects coding') constraints.push(this.sumOf(this.loadingNodes(factor, g), factor.measures.length))
+        // Where loadings are held, the first group's equation sets the scale there too; one more would tie released ones.
+        if (scaling === 'effects coding' && !(g > 0 && this.anyHeld(factor, g))) {
+          constraints.push(this.sumOf(this.loadingNodes(factor, g), factor.measures.length))
+        }
       })
       this.scaleMeans(factor, equal, meansCoded, constraints)
     }
@@ -268,7 +271,7 @@ class CellBuilder {
     this.groups.forEach((_, g) => {
       const estimable = g > 0 && own.some((indicator) => this.held('intercept', [indicator], g))
       if (effects || (estimable && !equal.includes('factor means'))) this.node('factor mean', [factor.name], g)!.fixed = null
-      if (effects) {
+      if (effects && !estimable) {
         constraints.push(
           this.sumOf(
             own.map((indicator) => this.node('intercept', [indicator], g)!),

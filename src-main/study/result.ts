@@ -68,6 +68,31 @@ export interface LadderResult {
   steps: StepResult[]
 }
 
+/** What is missing among the indicators, all groups together. */
+export interface MissingResult {
+  /** Answers missing. */
+  values: number
+  /** Cases with some answer missing: what complete-case analysis would drop. */
+  cases: number
+  /** Which indicators were answered together, most frequent first. */
+  patterns: { answered: string[]; n: number }[]
+}
+
+/** Multivariate skewness and kurtosis by group (Mardia 1970), and each indicator's own. */
+export interface NormalityResult {
+  groups: NormalityGroup[]
+  /** What they imply for the statistic, in plain words; null where no group allows the tests. */
+  sentence: string | null
+}
+
+export interface NormalityGroup {
+  group: string | null
+  n: number
+  skewness: { value: number; chiSquare: number; df: number; p: number }
+  kurtosis: { value: number; expected: number; z: number; p: number }
+  indicators: { name: string; skewness: number; kurtosis: number }[]
+}
+
 export interface StudyResult {
   study: string
   program: { name: 'rungwise'; version: string }
@@ -75,6 +100,9 @@ export interface StudyResult {
     digest: string
     indicators: string[]
     groups: { name: string | null; n: number; complete: number }[]
+    missing: MissingResult
+    /** How far from normal the answers are, on the cases complete on every indicator; null for published summaries. */
+    normality: NormalityResult | null
     cautions: Caution[]
   }
   candidates: CandidateResult[]

@@ -2,25 +2,30 @@
  * A crew of one: does each job on the calling thread. For tests and for reading; a window would freeze under it.
  */
 import { relationOf } from '../statistics/comparison/relation.ts'
+import { scoreTests } from '../statistics/estimation/score-tests.ts'
 import { fitModel } from '../statistics/fit/fit.ts'
-import type { Crew, FitJob, FitOutcome, RelationJob, RelationOutcome } from './jobs.ts'
+import type { Crew, Job, Outcome } from './jobs.ts'
 
 export const inlineCrew: Crew = {
-  async fit(job, signal) {
-    signal?.throwIfAborted()
-    return doJob(job)
-  },
-  async relation(job, signal) {
-    signal?.throwIfAborted()
-    return doJob(job)
-  },
+  fit: done,
+  relation: done,
+  scoreTests: done,
   async close() {}
 }
 
+async function done<Result extends Outcome>(job: Job, signal?: AbortSignal): Promise<Result> {
+  signal?.throwIfAborted()
+  return doJob(job) as Result
+}
+
 /** The whole of what a worker knows: which function of the statistics answers which job. */
-export function doJob(job: FitJob): FitOutcome
-export function doJob(job: RelationJob): RelationOutcome
-export function doJob(job: FitJob | RelationJob): FitOutcome | RelationOutcome
-export function doJob(job: FitJob | RelationJob): FitOutcome | RelationOutcome {
-  return job.kind === 'fit' ? fitModel(job.cells, job.moments, job.settings, job.rows) : relationOf(job)
+export function doJob(job: Job): Outcome {
+  switch (job.kind) {
+    case 'fit':
+      return fitModel(job.cells, job.moments, job.settings, job.rows)
+    case 'relation':
+      return relationOf(job)
+    case 'score tests':
+      return scoreTests(job.cells, job.moments, job.settings.convention, job.gamma)
+  }
 }

@@ -2,6 +2,7 @@
  * What a fit worker is asked and what it answers: plain, structured-clonable values. No statistics here.
  */
 import type { RelationInput, RelationOutcome } from '../statistics/comparison/relation.ts'
+import type { ScoreTests } from '../statistics/estimation/score-tests.ts'
 import type { FitOutcome } from '../statistics/fit/fit-result.ts'
 import type { FitSettings } from '../statistics/fit/settings.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
@@ -22,10 +23,23 @@ export interface RelationJob extends RelationInput {
   kind: 'relation'
 }
 
+/** What would releasing each restriction of a fitted model do? */
+export interface ScoreJob {
+  kind: 'score tests'
+  cells: ModelCells
+  moments: SampleMoments
+  settings: FitSettings
+  gamma: number[]
+}
+
+export type Job = FitJob | RelationJob | ScoreJob
+export type Outcome = FitOutcome | RelationOutcome | ScoreTests
+
 /** Runs jobs, off the calling thread where it can. A job rejects only on a bug or when `signal` aborts. */
 export interface Crew {
   fit(job: FitJob, signal?: AbortSignal): Promise<FitOutcome>
   relation(job: RelationJob, signal?: AbortSignal): Promise<RelationOutcome>
+  scoreTests(job: ScoreJob, signal?: AbortSignal): Promise<ScoreTests>
   close(): Promise<void>
 }
 

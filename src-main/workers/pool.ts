@@ -5,7 +5,7 @@ import { existsSync } from 'node:fs'
 import { availableParallelism } from 'node:os'
 import { join } from 'node:path'
 import { Piscina } from 'piscina'
-import type { Crew, FitJob, FitOutcome, RelationJob, RelationOutcome } from './jobs.ts'
+import type { Crew, Job } from './jobs.ts'
 
 export interface PoolOptions {
   /** The folder of the running bundle; the worker's bundle lies in it, or one folder up when the code was split off into chunks/. */
@@ -28,13 +28,14 @@ export function createPool(options: PoolOptions): Crew {
     idleTimeout: 30_000
   })
   return {
-    fit: (job, signal) => run<FitOutcome>(pool, job, signal),
-    relation: (job, signal) => run<RelationOutcome>(pool, job, signal),
+    fit: (job, signal) => run(pool, job, signal),
+    relation: (job, signal) => run(pool, job, signal),
+    scoreTests: (job, signal) => run(pool, job, signal),
     close: () => pool.destroy()
   }
 }
 
-async function run<Outcome>(pool: Piscina, job: FitJob | RelationJob, signal: AbortSignal | undefined): Promise<Outcome> {
+async function run<Outcome>(pool: Piscina, job: Job, signal: AbortSignal | undefined): Promise<Outcome> {
   signal?.throwIfAborted()
   try {
     return await pool.run(job, signal === undefined ? {} : { signal })

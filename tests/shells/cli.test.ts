@@ -152,5 +152,10 @@ function endlessCrew(onFirst: () => void): Crew {
       signal?.addEventListener('abort', () => fail(signal.reason))
       setImmediate(onFirst)
     })
-  return { fit: (_job, signal) => wait(signal), relation: (_job, signal) => wait(signal), close: async () => {} }
+  return {
+    fit: (_job, signal) => wait(signal),
+    relation: (_job, signal) => wait(signal),
+    scoreTests: (_job, signal) => wait(signal),
+    close: async () => {}
+  }
 }

@@ -15,6 +15,8 @@ export function handMadeResult(): StudyResult {
         { name: 'Bow', n: 310, complete: 304 },
         { name: 'Stern', n: 297, complete: 297 }
       ],
+      missing: { values: 0, cases: 0, patterns: [] },
+      normality: null,
       cautions: [{ code: 'missing', message: '6 cases in Bow have a missing answer.', cell: null }]
     },
     candidates: [
@@ -93,6 +95,7 @@ function candidate(name: string, own: Partial<CandidateResult>): CandidateResult
     rmsea: { estimate: 0.04, lower: 0.024, upper: 0.053, closeFitP: 0.8, notCloseFitP: 0 },
     srmr: 0.031,
     srmrWithMeans: 0.032,
+    plugIn: null,
     standardErrors: 'expected',
     estimates: [],
     residuals: null,

@@ -21,8 +21,6 @@ import { cellColumns, columnDot, formEntry, sideBySide } from './cell-columns.ts
 import { addExpectedCurvature, addObservedCurvature } from './curvature.ts'
 import type { GroupWork, PatternWork } from './work.ts'
 
-export { cellColumns } from './cell-columns.ts'
-
 export type Convention = 'normal' | 'wishart'
 /** tangent: observed, but with the second derivatives of the moments themselves left out (Delta' A Delta of scaling-missing.ts). */
 export type CurvatureKind = 'expected' | 'observed' | 'tangent'

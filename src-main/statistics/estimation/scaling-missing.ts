@@ -31,9 +31,63 @@ export function missingScalingFactor(
   rows: readonly Float64Array[]
 ): number | null {
   if (model.df <= 0) return null
-  const whole = unrestrictedTrace(model, objective.states, moments, rows)
+  const whole = unrestrictedTrace(objective.states, moments, rows)
   const own = modelTrace(model, objective, rows)
   return whole === null || own === null ? null : (whole - own) / model.df
+}
+
+/**
+ * c of the baseline (independent indicators with their own means and variances), with both informations at the
+ * unrestricted estimates: at the baseline's own moments, far from the data, A need not be positive definite. Its Delta only
+ * selects means and variances, so that tr(U Gamma) is tr(A^-1 B) less the same trace over those rows and columns.
+ *
+ * @returns null where A is not positive definite, or for one indicator
+ */
+export function missingBaselineScaling(moments: SampleMoments, rows: readonly Float64Array[]): number | null {
+  const p = moments.indicators.length
+  let trace = 0
+  for (let g = 0; g < moments.groups.length; g++) {
+    const { covariance, mean } = moments.groups[g]!
+    const { model, objective, information } = unrestrictedInformation(moments, g, { p, sigma: covariance, mu: mean! })
+    const cross = scoreCrossProducts(model, objective.states, [rows[g]!])
+    const selected = model.gammaLabels.flatMap((label, k) => (isMeanOrVariance(label) ? [k] : []))
+    const whole = traceOfSolved(information, cross, model.parameters)
+    const own = traceOfSolved(
+      submatrix(information, model.parameters, selected),
+      submatrix(cross, model.parameters, selected),
+      selected.length
+    )
+    if (whole === null || own === null) return null
+    trace += whole - own
+  }
+  const df = (moments.groups.length * p * (p - 1)) / 2
+  return df > 0 ? trace / df : null
+}
+
+function isMeanOrVariance(label: string): boolean {
+  const [kind, i, j] = label.split(' ')
+  return kind === 'm' || i === j
+}
+
+/** Rows and columns of a lower triangle. */
+function submatrix(a: Float64Array, n: number, selected: readonly number[]): Float64Array {
+  const k = selected.length
+  const out = new Float64Array(k * k)
+  for (let i = 0; i < k; i++) for (let j = 0; j <= i; j++) out[i * k + j] = a[selected[i]! * n + selected[j]!]!
+  return out
+}
+
+/** tr(A^-1 B) of two lower triangles; null when A is not positive definite. A is overwritten. */
+function traceOfSolved(a: Float64Array, b: Float64Array, n: number): number | null {
+  if (!cholesky(a, n, a)) return null
+  let trace = 0
+  const column = new Float64Array(n)
+  for (let j = 0; j < n; j++) {
+    for (let i = 0; i < n; i++) column[i] = b[Math.max(i, j) * n + Math.min(i, j)]!
+    choleskySolve(a, n, column)
+    trace += column[j]!
+  }
+  return trace
 }
 
 /** tr[(Delta'A Delta)^-1 Delta'B Delta] */
@@ -42,52 +96,43 @@ function modelTrace(model: CompiledModel, objective: Objective, rows: readonly F
   const information = new Float64Array(q * q)
   objective.derive(new Float64Array(q), information, 'tangent')
   for (let k = 0; k < information.length; k++) information[k]! *= objective.total / 2
-  if (!cholesky(information, q, information)) return null
-  const cross = scoreCrossProducts(model, objective.states, rows)
-  let trace = 0
-  const column = new Float64Array(q)
-  for (let j = 0; j < q; j++) {
-    for (let i = 0; i < q; i++) column[i] = cross[Math.max(i, j) * q + Math.min(i, j)]!
-    choleskySolve(information, q, column)
-    trace += column[j]!
-  }
-  return trace
+  return traceOfSolved(information, scoreCrossProducts(model, objective.states, rows), q)
 }
 
-/** tr(A^-1 B) = sum over the cases of s' A^-1 s, group by group. */
-function unrestrictedTrace(
-  model: CompiledModel,
-  states: readonly GroupState[],
-  moments: SampleMoments,
-  rows: readonly Float64Array[]
-): number | null {
+/** tr(A^-1 B) = sum over the cases of s' A^-1 s, group by group, so that B is never formed. */
+function unrestrictedTrace(states: readonly GroupState[], moments: SampleMoments, rows: readonly Float64Array[]): number | null {
   let trace = 0
   for (let g = 0; g < states.length; g++) {
-    const part = groupTrace(model, states[g]!, moments, rows[g]!, g)
-    if (part === null) return null
-    trace += part
+    const { model, objective, information } = unrestrictedInformation(moments, g, states[g]!)
+    const q = model.parameters
+    if (!cholesky(information, q, information)) return null
+    const solved = new Float64Array(q)
+    casewiseScores(model, objective.states, [rows[g]!], (score) => {
+      solved.set(score)
+      choleskySolve(information, q, solved)
+      for (let k = 0; k < q; k++) trace += score[k]! * solved[k]!
+    })
   }
   return trace
 }
 
-function groupTrace(model: CompiledModel, state: GroupState, moments: SampleMoments, rows: Float64Array, g: number): number | null {
+type Moments = Pick<GroupState, 'p' | 'sigma' | 'mu'>
+
+/** The unrestricted model of one group standing at the given moments, and A there (sum over the cases, lower triangle). */
+function unrestrictedInformation(
+  moments: SampleMoments,
+  g: number,
+  at: Moments
+): { model: CompiledModel; objective: Objective; information: Float64Array } {
   const sample = moments.groups[g]!
-  const saturated = compileModel(saturatedCells(model.indicators))
-  const objective = normalObjective(saturated, { indicators: moments.indicators, groups: [{ ...sample, name: null }] }, 'normal')
-  objective.evaluate(Float64Array.from(saturated.gammaLabels, (label) => momentAt(label, state)))
-  const q = saturated.parameters
+  const model = compileModel(saturatedCells(moments.indicators))
+  const objective = normalObjective(model, { indicators: moments.indicators, groups: [{ ...sample, name: null }] }, 'normal')
+  objective.evaluate(Float64Array.from(model.gammaLabels, (label) => momentAt(label, at)))
+  const q = model.parameters
   const information = new Float64Array(q * q)
   objective.derive(new Float64Array(q), information, 'observed')
   for (let k = 0; k < information.length; k++) information[k]! *= sample.n / 2
-  if (!cholesky(information, q, information)) return null
-  let trace = 0
-  const solved = new Float64Array(q)
-  casewiseScores(saturated, objective.states, [rows], (score) => {
-    solved.set(score)
-    choleskySolve(information, q, solved)
-    for (let k = 0; k < q; k++) trace += score[k]! * solved[k]!
-  })
-  return trace
+  return { model, objective, information }
 }
 
 /** No factors: every covariance and mean is a parameter, named by its place. */
@@ -112,7 +157,7 @@ function saturatedCells(indicators: string[]): ModelCells {
   }
 }
 
-function momentAt(label: string, { p, sigma, mu }: GroupState): number {
+function momentAt(label: string, { p, sigma, mu }: Moments): number {
   const [kind, i, j] = label.split(' ')
   return kind === 'm' ? mu[Number(i)]! : sigma[Number(i) * p + Number(j)]!
 }

@@ -5,7 +5,6 @@ import { EigenvalueDecomposition, Matrix } from 'ml-matrix'
 import { cellWords } from '../model/cell-words.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { GroupState } from '../model/implied-moments.ts'
-import type { SampleMoments } from '../moments/sample-moments.ts'
 import type { Caution, EstimateResult } from './fit-result.ts'
 
 /** Negative residual variances, factor correlations of 1 or more, matrices that are no covariance matrices. */
@@ -95,25 +94,6 @@ export function standardErrorCautions(estimates: readonly EstimateResult[]): Cau
     message: `No standard error could be computed for ${cellWords(e.part, e.of, e.group)}.`,
     cell: e.of
   }))
-}
-
-/** With missing answers, what full information rests on. */
-export function missingDataCautions(moments: SampleMoments, standardErrors: 'expected' | 'observed' | 'robust'): Caution[] {
-  if (!moments.groups.some((g) => (g.patterns?.length ?? 0) > 1)) return []
-  const found: Caution[] = [
-    {
-      code: 'missing-at-random',
-      message:
-        'Full information is right when what is missing depends only on answers that were given (missing at random); the data cannot show that.',
-      cell: null
-    }
-  ]
-  if (standardErrors === 'expected') {
-    const message =
-      'With missing answers, standard errors from the expected information also need the answers to be missing completely at random; the observed information does not.'
-    found.push({ code: 'expected-information-with-missing', message, cell: null })
-  }
-  return found
 }
 
 /** What the size of the sample does to the exact-fit test (common practice, no source). */

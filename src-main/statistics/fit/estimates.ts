@@ -1,11 +1,15 @@
 /**
- * Cell by cell: estimates, standard errors (expected information) and completely standardised values.
+ * Cell by cell: estimates with standard errors and 95% intervals, completely standardised values with theirs.
  */
 import type { CellPart } from '../model/cells.ts'
 import { type CompiledGroup, type CompiledModel, cellValue, type FreeCell, type MatrixName } from '../model/compile.ts'
 import type { GroupState } from '../model/implied-moments.ts'
 import { standardisation } from '../model/standardisation.ts'
 import type { EstimateResult } from './fit-result.ts'
+import { StandardisedErrors } from './standardised-errors.ts'
+
+/** Of a 95% interval in standard errors: the upper .975 quantile of the standard normal. */
+const halfWidth = 1.959963984540054
 
 /**
  * @param states the groups' matrices at the solution
@@ -36,10 +40,12 @@ function groupEstimates(
   uses: Map<string, number>
 ): EstimateResult[] {
   const free = new Map(group.free.map((cell) => [`${cell.matrix} ${cell.row} ${cell.column}`, cell]))
+  const errors = covariance === null ? null : new StandardisedErrors(model, group, state, covariance)
   const out: EstimateResult[] = []
   for (const place of cellPlaces(model, state, free)) {
     const cell = free.get(`${place.matrix} ${place.row} ${place.column}`)
     const estimate = cell === undefined ? place.value : cellValue(cell, gamma)
+    const error = cell === undefined || covariance === null ? null : standardError(cell, covariance, model.parameters)
     out.push({
       part: place.part,
       group: group.name,
@@ -47,8 +53,11 @@ function groupEstimates(
       free: cell !== undefined,
       label: cell !== undefined && (uses.get(cell.label) ?? 0) > 1 ? cell.label : null,
       estimate,
-      standardError: cell === undefined || covariance === null ? null : standardError(cell, covariance, model.parameters),
-      standardized: finite(estimate * standardisation(place, state))
+      standardError: error,
+      lower: error === null ? null : estimate - halfWidth * error,
+      upper: error === null ? null : estimate + halfWidth * error,
+      standardized: finite(estimate * standardisation(place, state)),
+      standardizedError: errors?.of(place, cell, estimate) ?? null
     })
   }
   return out

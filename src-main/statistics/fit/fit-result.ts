@@ -32,8 +32,13 @@ export interface EstimateResult {
   label: string | null
   estimate: number | null
   standardError: number | null
+  /** Normal-theory 95% interval of the estimate. */
+  lower: number | null
+  upper: number | null
   /** Completely standardised: indicators and factors of unit model-implied variance in their group. */
   standardized: number | null
+  /** Delta-method standard error of the standardised value. */
+  standardizedError: number | null
 }
 
 /** One start of the search for the smallest minimum. */
@@ -53,7 +58,8 @@ export interface FitResult {
   T: number | null
   df: number
   p: number | null
-  scaled: { T: number; p: number; scaling: number } | null
+  /** The mean-scaled statistic, where the plan asks for it; `form` names the source of the scaling factor. */
+  scaled: { T: number; p: number; scaling: number; form: string } | null
   /** Free parameters, counted as in AIC and BIC (saturated means included where means are modelled). */
   parameters: number
   /** N of every formula: sum n_g, or sum (n_g - 1) under the Wishart convention. */
@@ -75,6 +81,11 @@ export interface FitResult {
   rmsea: RmseaResult
   srmr: number | null
   srmrWithMeans: number | null
+  /**
+   * cfi, tli and rmsea rest on T unless the statistic is scaled: then they are of the population-consistent kind
+   * (Brosseau-Liard, Savalei & Li 2012; Brosseau-Liard & Savalei 2014), and the plain use of T_scaled stands here.
+   */
+  plugIn: { cfi: number | null; tli: number | null; rmsea: number | null } | null
   /** Which information the standard errors come from; null when there is no solution. */
   standardErrors: 'expected' | 'observed' | 'robust' | null
   estimates: EstimateResult[]

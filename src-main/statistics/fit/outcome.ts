@@ -5,11 +5,12 @@ import { type Convention, effectiveSize, type Objective } from '../estimation/no
 import type { Minimum } from '../estimation/scoring.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
-import { improperCautions, missingDataCautions, sampleSizeCautions, standardErrorCautions } from './cautions.ts'
+import { improperCautions, sampleSizeCautions, standardErrorCautions } from './cautions.ts'
 import { estimateCovariance } from './covariance.ts'
 import { cellEstimates } from './estimates.ts'
 import type { Caution, FitOutcome, FitResult, FitState } from './fit-result.ts'
 import { fitIndices, standardisedResidual } from './indices.ts'
+import { scaledParts } from './scaled.ts'
 import type { FitSettings } from './settings.ts'
 
 type Convergence = FitResult['convergence']
@@ -47,6 +48,8 @@ export function fittedResult({ model, moments, objective, minimum, settings, row
   const logLikelihood = unrestricted - T / 2
   const baseline = { T: n * objective.baseline, df: (model.groups.length * p * (p - 1)) / 2 }
   const residual = residualSize(model, moments, objective, convention)
+  const scaled =
+    settings.statistic === 'mean-scaled' && rows !== null ? scaledParts({ model, moments, objective, rows, T, baseline }) : null
   return {
     ...blank(model, n, convergence),
     state: 'fitted',
@@ -65,6 +68,9 @@ export function fittedResult({ model, moments, objective, minimum, settings, row
       logLikelihood,
       parameters: model.parameters
     }),
+    ...scaled?.indices,
+    scaled: scaled?.scaled ?? null,
+    plugIn: scaled?.plugIn ?? null,
     ...residual,
     standardErrors,
     estimates,
@@ -76,7 +82,6 @@ export function fittedResult({ model, moments, objective, minimum, settings, row
       ...improperCautions(model, objective.states),
       ...standardErrorCautions(estimates),
       ...minimaCaution(convergence.minima),
-      ...missingDataCautions(moments, standardErrors),
       ...sampleSizeCautions(n, model.df)
     ]
   }
@@ -113,6 +118,7 @@ function blank(model: CompiledModel, n: number, convergence: Convergence): FitRe
     rmsea: { estimate: null, lower: null, upper: null, closeFitP: null, notCloseFitP: null },
     srmr: null,
     srmrWithMeans: null,
+    plugIn: null,
     standardErrors: null,
     estimates: [],
     residuals: null,

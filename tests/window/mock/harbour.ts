@@ -78,7 +78,10 @@ function estimates(groups: (string | null)[]): EstimateResult[] {
         label: free && groups.length > 1 ? 'a' + i : null,
         estimate: value,
         standardError: free ? 0.043 + 0.003 * i : null,
-        standardized: 0.62 + 0.03 * (i % 4)
+        lower: null,
+        upper: null,
+        standardized: 0.62 + 0.03 * (i % 4),
+        standardizedError: null
       }
     }),
     ...indicators.map((name, i): EstimateResult => {
@@ -91,7 +94,10 @@ function estimates(groups: (string | null)[]): EstimateResult[] {
         label: null,
         estimate: value,
         standardError: 0.031,
-        standardized: 0.5
+        lower: null,
+        upper: null,
+        standardized: 0.5,
+        standardizedError: null
       }
     }),
     ...[0, 1, 2].map((k): EstimateResult => {
@@ -104,7 +110,10 @@ function estimates(groups: (string | null)[]): EstimateResult[] {
         label: null,
         estimate: 0.22 - 0.17 * k,
         standardError: 0.041,
-        standardized: 0.41 - 0.3 * k
+        lower: null,
+        upper: null,
+        standardized: 0.41 - 0.3 * k,
+        standardizedError: null
       }
     })
   ])
@@ -146,6 +155,7 @@ function result(view: CandidateView, f: Figures, weight: number): CandidateResul
     rmsea: { estimate: f.rmsea[0], lower: f.rmsea[1], upper: f.rmsea[2], closeFitP: 0.871, notCloseFitP: 0.00002 },
     srmr: f.srmr,
     srmrWithMeans: f.srmr,
+    plugIn: null,
     standardErrors: 'expected',
     estimates: estimates(groups),
     residuals: groups.map((group, g) => ({ group, lower: lower(g) })),
@@ -388,7 +398,14 @@ export function harbourStudy(): StudyView {
     result: {
       study: 'Harbour clinics, intake 2031',
       program: { name: 'rungwise', version: '0.1.0' },
-      data: { digest: 'sha256:00', indicators, groups, cautions: [] },
+      data: {
+        digest: 'sha256:00',
+        indicators,
+        groups,
+        missing: { values: 14, cases: 14, patterns: [] },
+        normality: null,
+        cautions: []
+      },
       candidates: candidates.map((view, i) => result(view, figures[view.candidate.name]!, weights[i]!)),
       ladders
     },

@@ -51,12 +51,9 @@ export function missingBaselineScaling(moments: SampleMoments, rows: readonly Fl
     const { model, objective, information } = unrestrictedInformation(moments, g, { p, sigma: covariance, mu: mean! })
     const cross = scoreCrossProducts(model, objective.states, [rows[g]!])
     const selected = model.gammaLabels.flatMap((label, k) => (isMeanOrVariance(label) ? [k] : []))
+    const part = (matrix: Float64Array) => submatrix(matrix, model.parameters, selected)
+    const own = traceOfSolved(part(information), part(cross), selected.length)
     const whole = traceOfSolved(information, cross, model.parameters)
-    const own = traceOfSolved(
-      submatrix(information, model.parameters, selected),
-      submatrix(cross, model.parameters, selected),
-      selected.length
-    )
     if (whole === null || own === null) return null
     trace += whole - own
   }

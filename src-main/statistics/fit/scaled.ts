@@ -37,7 +37,7 @@ export function scaledParts(input: ScaledInput): ScaledParts | null {
   const form = missing ? missingScalingForm : 'Satorra & Bentler 1994'
   const scaled = { T: T / scaling, p: chiSquareUpper(T / scaling, model.df), scaling, form }
   const ofBaseline = missing
-    ? missingBaselineScaling(input)
+    ? missingBaselineScaling(moments, input.rows)
     : (baselineScaling(caseGroups(input), model.indicators.length)?.scaling ?? null)
   if (ofBaseline === null) return { scaled, indices: null, plugIn: null }
   const indexInput = {

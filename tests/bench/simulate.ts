@@ -7,9 +7,17 @@ import { completeCaseMoments, type SampleMoments } from '../../src-main/statisti
  * for a factor mean that rises by .2 a group, so that strict invariance holds.
  */
 export function simulate(p: number, m: number, sizes: readonly number[], generator: Generator): SampleMoments {
-  const indicators = Array.from({ length: p }, (_, i) => `y${i + 1}`)
+  const groups = simulateRows(p, m, sizes, generator).map((values, g) => ({
+    name: sizes.length > 1 ? `g${g + 1}` : null,
+    ...completeCaseMoments(values, p)
+  }))
+  return { indicators: Array.from({ length: p }, (_, i) => `y${i + 1}`), groups }
+}
+
+/** The cases behind them: per group n x p row-major. */
+export function simulateRows(p: number, m: number, sizes: readonly number[], generator: Generator): Float64Array[] {
   const per = p / m
-  const groups = sizes.map((n, g) => {
+  return sizes.map((n, g) => {
     const values = new Float64Array(n * p)
     const eta = new Float64Array(m)
     for (let row = 0; row < n; row++) {
@@ -20,7 +28,6 @@ export function simulate(p: number, m: number, sizes: readonly number[], generat
         values[row * p + i] = loading * eta[Math.floor(i / per)]! + Math.sqrt(1 - loading * loading) * generator.normal()
       }
     }
-    return { name: sizes.length > 1 ? `g${g + 1}` : null, ...completeCaseMoments(values, p) }
+    return values
   })
-  return { indicators, groups }
 }

@@ -33,24 +33,38 @@ export interface Indices {
 }
 
 export function fitIndices(input: IndexInput): Indices {
-  const { T, df, n, groups, indicators, logLikelihood, parameters } = input
-  const misfit = (T - df) / n
+  const { T, df, n, groups, logLikelihood, parameters } = input
   return {
     p: df > 0 ? chiSquareUpper(T, df) : null,
     aic: -2 * logLikelihood + 2 * parameters,
     bic: -2 * logLikelihood + parameters * Math.log(n),
     adjustedBic: -2 * logLikelihood + parameters * Math.log((n + 2) / 24),
     ecvi: T / n + (2 * parameters) / n,
-    cfi: comparativeFit(input),
+    ...pointIndices(input),
     tli: tuckerLewis(input),
-    mcdonald: Math.exp(-misfit / 2),
-    gammaHat: (indicators * groups) / (indicators * groups + 2 * misfit),
     rmsea: rmsea(T, df, n, groups)
   }
 }
 
+/** The indices that rules of change in fit look at, without intervals: cheap enough for thousands of resamples. */
+export function pointIndices(input: Omit<IndexInput, 'logLikelihood' | 'parameters'>): {
+  cfi: number
+  mcdonald: number
+  gammaHat: number
+  rmsea: number | null
+} {
+  const { T, df, n, groups, indicators } = input
+  const misfit = (T - df) / n
+  return {
+    cfi: comparativeFit(input),
+    mcdonald: Math.exp(-misfit / 2),
+    gammaHat: (indicators * groups) / (indicators * groups + 2 * misfit),
+    rmsea: df > 0 ? rmseaAt(Math.max(0, T - df), df, n, groups) : null
+  }
+}
+
 /** CFI (Bentler 1990): 1 - max(T - df, 0) / max(T_b - df_b, T - df, 0); 1 when even the baseline fits. */
-function comparativeFit({ T, df, baseline }: IndexInput): number {
+function comparativeFit({ T, df, baseline }: Pick<IndexInput, 'T' | 'df' | 'baseline'>): number {
   const noncentrality = Math.max(T - df, 0)
   const worst = Math.max(baseline.T - baseline.df, noncentrality)
   return worst > 0 ? 1 - noncentrality / worst : 1
@@ -66,7 +80,7 @@ function tuckerLewis({ T, df, baseline }: IndexInput): number | null {
 /** RMSEA (Steiger & Lind 1980; Steiger 1998) with its 90% interval and the tests of close and not-close fit (Browne & Cudeck 1993). */
 export function rmsea(T: number, df: number, n: number, groups: number): RmseaResult {
   if (df <= 0) return { estimate: null, lower: null, upper: null, closeFitP: null, notCloseFitP: null }
-  const of = (noncentrality: number) => Math.sqrt((noncentrality / (df * n)) * groups)
+  const of = (noncentrality: number) => rmseaAt(noncentrality, df, n, groups)
   const noncentralityAt = (value: number) => (value * value * n * df) / groups
   return {
     estimate: of(Math.max(0, T - df)),
@@ -75,6 +89,10 @@ export function rmsea(T: number, df: number, n: number, groups: number): RmseaRe
     closeFitP: noncentralChiSquareUpper(T, df, noncentralityAt(0.05)),
     notCloseFitP: noncentralChiSquareLower(T, df, noncentralityAt(0.08))
   }
+}
+
+function rmseaAt(noncentrality: number, df: number, n: number, groups: number): number {
+  return Math.sqrt((noncentrality / (df * n)) * groups)
 }
 
 /**

@@ -7,7 +7,9 @@
  * loading), and last the changes.
  */
 import { cellWords } from '../statistics/model/cell-words.ts'
-import type { Cell, GroupCells, LinearConstraint, ModelCells } from '../statistics/model/cells.ts'
+import type { Cell, GroupCells, ModelCells } from '../statistics/model/cells.ts'
+import { CellClasses, Contradiction, type Equation, type Node } from './cell-classes.ts'
+import { type Constraint, constraintWords } from './change-words.ts'
 import { InputError } from './input-error.ts'
 import { didYouMean } from './nearest.ts'
 import {
@@ -85,16 +87,6 @@ export function candidateCells(candidate: ResolvedCandidate, frame: ModelFrame):
   return new CellBuilder(candidate, frame).build()
 }
 
-/** One cell while the model is being built; `leader` makes the classes of equal cells (a disjoint-set forest). */
-interface Node {
-  part: CellPart
-  of: string[]
-  group: number
-  /** null while free. */
-  fixed: number | null
-  leader: Node | null
-}
-
 const setOfPart: Record<CellPart, EqualSet> = {
   loading: 'loadings',
   'factor regression': 'loadings',
@@ -112,7 +104,9 @@ class CellBuilder {
   private readonly indicators: string[]
   private readonly factorNames: string[]
   private readonly groups: (string | null)[]
-  private readonly nodes = new Map<string, Node>()
+  private readonly cells = new CellClasses()
+  /** Of effects coding, then of the changes, in order. */
+  private equations: Equation[] = []
   /** Factors that another factor measures or predicts. */
   private readonly endogenous = new Set<string>()
 
@@ -128,16 +122,30 @@ class CellBuilder {
     this.groups.forEach((_, g) => {
       this.placePattern(g)
     })
-    const constraints = this.scale()
+    this.scale()
     this.tieAcrossGroups()
     for (const change of this.candidate.changes) this.apply(change)
-    const labels = this.labels()
+    const { labels, constraints, bounds } = this.settle()
     return {
       indicators: this.indicators,
       factors: this.factorNames,
       groups: this.groups.map((name, g) => this.groupCells(name, g, labels)),
-      constraints: constraints.map((make) => make(labels)).filter((c) => c !== null)
+      constraints,
+      ...(bounds.length > 0 ? { bounds } : {})
     }
+  }
+
+  private settle() {
+    try {
+      return this.cells.settle(this.equations, (node) => this.words(node))
+    } catch (error) {
+      if (error instanceof Contradiction) this.fail(error.message, error.remedy)
+      throw error
+    }
+  }
+
+  private words({ part, of, group }: Node): string {
+    return cellWords(part, of, this.groups[group])
   }
 
   private fail(what: string, remedy: string | null = null): never {
@@ -170,19 +178,12 @@ class CellBuilder {
     return this.frame.indicators.filter((name) => used.has(name))
   }
 
-  private key(part: CellPart, of: readonly string[], group: number): string {
-    const names = part === 'residual covariance' || part === 'factor covariance' ? [...of].sort() : of
-    return JSON.stringify([part, group, ...names])
-  }
-
   private node(part: CellPart, of: readonly string[], group: number): Node | undefined {
-    return this.nodes.get(this.key(part, of, group))
+    return this.cells.find(part, of, group)
   }
 
   private put(part: CellPart, of: string[], group: number, fixed: number | null): Node {
-    const node: Node = { part, of, group, fixed, leader: null }
-    this.nodes.set(this.key(part, of, group), node)
-    return node
+    return this.cells.put(part, of, group, fixed)
   }
 
   private loadingPart(measure: string): CellPart {
@@ -213,13 +214,12 @@ class CellBuilder {
   }
 
   private sameCell(cell: CellName, part: CellPart, of: readonly string[]): boolean {
-    return cell.part === part && this.key(part, cell.of, 0) === this.key(part, of, 0)
+    return cell.part === part && this.cells.key(part, cell.of, 0) === this.cells.key(part, of, 0)
   }
 
-  /** Fixes what sets each factor's scale; returns the equations of effects coding, to be made once labels are known. */
-  private scale(): ((labels: Map<Node, string>) => LinearConstraint | null)[] {
+  /** Fixes what sets each factor's scale, or makes the equations of effects coding. */
+  private scale(): void {
     const { scaling, factors, equal } = this.candidate
-    const constraints: ((labels: Map<Node, string>) => LinearConstraint | null)[] = []
     const meansCoded = new Set<string>()
     for (const factor of factors) {
       this.groups.forEach((_, g) => {
@@ -227,13 +227,11 @@ class CellBuilder {
         if (scaling === 'factor variance' && !(g > 0 && this.anyHeld(factor, g)))
           this.node('factor variance', [factor.name], g)!.fixed = 1
         // Where loadings are held, the first group's equation sets the scale there too; one more would tie released ones.
-        if (scaling === 'effects coding' && !(g > 0 && this.anyHeld(factor, g))) {
-          constraints.push(this.sumOf(this.loadingNodes(factor, g), factor.measures.length))
-        }
+        if (scaling === 'effects coding' && !(g > 0 && this.anyHeld(factor, g)))
+          this.sumOf(this.loadingNodes(factor, g), factor.measures.length)
       })
-      this.scaleMeans(factor, equal, meansCoded, constraints)
+      this.scaleMeans(factor, equal, meansCoded)
     }
-    return constraints
   }
 
   /** The first loading that no group has released carries the scale in every group. */
@@ -258,12 +256,7 @@ class CellBuilder {
    * Factor means: zero in the first group and free elsewhere once intercepts are held there; under effects coding free
    * everywhere with intercepts that sum to zero (of a factor that shares no indicator with one already coded so).
    */
-  private scaleMeans(
-    factor: Factor,
-    equal: readonly EqualSet[],
-    coded: Set<string>,
-    constraints: ((labels: Map<Node, string>) => LinearConstraint | null)[]
-  ): void {
+  private scaleMeans(factor: Factor, equal: readonly EqualSet[], coded: Set<string>): void {
     const own = factor.measures.filter((measure) => this.indicators.includes(measure))
     if (!this.frame.means || own.length === 0) return
     const effects = this.candidate.scaling === 'effects coding' && own.every((indicator) => !coded.has(indicator))
@@ -272,24 +265,16 @@ class CellBuilder {
       const estimable = g > 0 && own.some((indicator) => this.held('intercept', [indicator], g))
       if (effects || (estimable && !equal.includes('factor means'))) this.node('factor mean', [factor.name], g)!.fixed = null
       if (effects && !estimable) {
-        constraints.push(
-          this.sumOf(
-            own.map((indicator) => this.node('intercept', [indicator], g)!),
-            0
-          )
+        this.sumOf(
+          own.map((indicator) => this.node('intercept', [indicator], g)!),
+          0
         )
       }
     })
   }
 
-  /** sum of the nodes = total, with fixed ones moved to the right; null when nothing is left to constrain. */
-  private sumOf(nodes: Node[], total: number): (labels: Map<Node, string>) => LinearConstraint | null {
-    return (labels) => {
-      const free = nodes.filter((node) => this.top(node).fixed === null)
-      const rest = nodes.reduce((sum, node) => sum + (this.top(node).fixed ?? 0), 0)
-      if (free.length === 0) return null
-      return { terms: free.map((node) => ({ label: labels.get(this.top(node))!, weight: 1 })), equals: total - rest }
-    }
+  private sumOf(nodes: Node[], total: number): void {
+    this.equations.push({ terms: nodes.map((node) => ({ node, times: 1 })), total, words: null })
   }
 
   private tieAcrossGroups(): void {
@@ -297,7 +282,7 @@ class CellBuilder {
       this.fail('parts are held equal across groups, but it is not modelled across any', 'Add across: and the grouping column.')
     }
     for (const release of this.candidate.except) this.checkRelease(release)
-    for (const node of [...this.nodes.values()]) if (node.group > 0) this.tieToFirstGroup(node)
+    for (const node of this.cells.all()) if (node.group > 0) this.tieToFirstGroup(node)
   }
 
   private checkRelease({ cell, group }: Release): void {
@@ -320,36 +305,11 @@ class CellBuilder {
     if (first !== undefined) this.tie(first, node)
   }
 
-  private top(node: Node): Node {
-    return node.leader === null ? node : this.top(node.leader)
-  }
-
   /** Makes two cells equal; a fixed one fixes both. */
   private tie(a: Node, b: Node): void {
-    const first = this.top(a)
-    const second = this.top(b)
-    if (first === second) return
-    if (first.fixed !== null && second.fixed !== null && first.fixed !== second.fixed) {
-      const words = `${cellWords(a.part, a.of)} is fixed at ${first.fixed} and ${cellWords(b.part, b.of)} at ${second.fixed}`
-      this.fail(`${words}, so they cannot be equal`)
-    }
-    first.fixed = first.fixed ?? second.fixed
-    second.leader = first
-  }
-
-  /** Takes a cell out of its class, which keeps its value for the others. */
-  private leave(node: Node): void {
-    const followers = [...this.nodes.values()].filter((n) => n !== node && this.top(n) === this.top(node))
-    const { fixed } = this.top(node)
-    node.leader = null
-    const [head, ...rest] = followers
-    if (head === undefined) return
-    head.leader = null
-    head.fixed = fixed
-    for (const follower of rest) {
-      follower.leader = head
-      follower.fixed = null
-    }
+    if (this.cells.tie(a, b)) return
+    const fixed = (node: Node) => `${cellWords(node.part, node.of)} is fixed at ${this.cells.top(node).fixed}`
+    this.fail(`${fixed(a)} and ${fixed(b)}, so they cannot be equal`)
   }
 
   private checkCell(cell: CellName): void {
@@ -378,6 +338,10 @@ class CellBuilder {
   }
 
   private apply(change: Change): void {
+    if (change.do === 'constrain') {
+      this.constrain(change)
+      return
+    }
     const groups = this.groupsOf(change.group)
     if (change.do === 'equal') {
       for (const cell of change.cells) this.checkCell(cell)
@@ -385,11 +349,56 @@ class CellBuilder {
       return
     }
     this.checkCell(change.cell)
+    if (change.do === 'bound') {
+      this.bound(change, groups)
+      return
+    }
     const { part, of } = change.cell
     for (const g of groups) {
       if (change.do === 'fix') this.fix(part, of, g, change.at)
       else this.free(part, of, g, change.group === null)
     }
+  }
+
+  /** One equation in each group it stands in, or one across groups where its terms name theirs. */
+  private constrain(change: Constraint): void {
+    for (const { cell } of change.terms) this.checkCell(cell)
+    const across = change.terms.some((term) => term.group !== null)
+    for (const g of across ? [0] : this.groupsOf(change.group)) {
+      const terms = change.terms.map(({ cell, times, group }) => ({
+        node: this.inModel(cell, group === null ? g : this.groupsOf(group)[0]!, 'constrained'),
+        times
+      }))
+      const words = constraintWords(change)
+      if (terms.every(({ node }) => this.cells.top(node).fixed !== null))
+        this.fail(
+          `${words}: every cell of this constraint is fixed, so it constrains nothing`,
+          'Free one first, or remove the constraint.'
+        )
+      this.equations.push({ terms, total: change.to, words })
+    }
+  }
+
+  /** In the groups where the cell is free; where it is fixed there is nothing to bound. */
+  private bound({ cell, atLeast, atMost }: Extract<Change, { do: 'bound' }>, groups: readonly number[]): void {
+    const nodes = groups.map((g) => this.inModel(cell, g, 'bounded'))
+    const free = nodes.filter((node) => this.cells.top(node).fixed === null)
+    if (free.length === 0)
+      this.fail(
+        `${cellWords(cell.part, cell.of)} is fixed at ${this.cells.top(nodes[0]!).fixed}, so it cannot be bounded`,
+        'Free it first.'
+      )
+    for (const node of free) {
+      node.atLeast = atLeast ?? node.atLeast
+      node.atMost = atMost ?? node.atMost
+    }
+  }
+
+  private inModel(cell: CellName, g: number, wish: string): Node {
+    return (
+      this.node(cell.part, cell.of, g) ??
+      this.fail(`${cellWords(cell.part, cell.of)} is not in the model, so it cannot be ${wish}`, 'Free it first.')
+    )
   }
 
   private groupsOf(group: string | null): number[] {
@@ -400,27 +409,27 @@ class CellBuilder {
   }
 
   private tieCells(cells: readonly CellName[], g: number): void {
-    const nodes = cells.map(
-      (cell) =>
-        this.node(cell.part, cell.of, g) ??
-        this.fail(`${cellWords(cell.part, cell.of)} is not in the model, so it cannot be made equal`, 'Free it first.')
-    )
+    const nodes = cells.map((cell) => this.inModel(cell, g, 'made equal'))
     for (const node of nodes.slice(1)) this.tie(nodes[0]!, node)
   }
 
   private fix(part: CellPart, of: string[], g: number, at: number): void {
     const node = this.node(part, of, g) ?? this.put(part, of, g, at)
-    this.leave(node)
+    this.cells.leave(node)
     node.fixed = at
   }
 
-  /** A cell that was fixed joins its part's equality across groups; one that was free becomes a parameter of its own. */
+  /**
+   * A cell that was fixed joins its part's equality across groups; one that was free becomes a parameter of its own, out of
+   * the constraints that a change put on it. What sets its factor's scale stays.
+   */
   private free(part: CellPart, of: string[], g: number, everywhere: boolean): void {
     const existing = this.node(part, of, g)
-    const wasFree = existing !== undefined && this.top(existing).fixed === null
+    const wasFree = existing !== undefined && this.cells.top(existing).fixed === null
     const node = existing ?? this.put(part, of, g, 0)
-    this.leave(node)
+    this.cells.leave(node)
     node.fixed = null
+    this.equations = this.equations.filter(({ terms, words }) => words === null || terms.every((term) => term.node !== node))
     if (part === 'factor regression') this.dropCovariance(of, g)
     if (!wasFree && everywhere && g > 0) this.tieToFirstGroup(node)
   }
@@ -429,30 +438,15 @@ class CellBuilder {
   private dropCovariance(of: string[], g: number): void {
     const covariance = this.node('factor covariance', of, g)
     if (covariance === undefined) return
-    this.leave(covariance)
+    this.cells.leave(covariance)
     covariance.fixed = 0
-  }
-
-  /** A label for each class of free cells: a letter for those that are shared, words of its own for the rest. */
-  private labels(): Map<Node, string> {
-    const members = new Map<Node, number>()
-    for (const node of this.nodes.values()) {
-      const top = this.top(node)
-      if (top.fixed === null) members.set(top, (members.get(top) ?? 0) + 1)
-    }
-    const labels = new Map<Node, string>()
-    let shared = 0
-    for (const [top, count] of members) {
-      labels.set(top, count > 1 ? letters(shared++) : this.key(top.part, top.of, top.group))
-    }
-    return labels
   }
 
   private groupCells(name: string | null, g: number, labels: Map<Node, string>): GroupCells {
     const cell = (part: CellPart, of: string[]): Cell => {
       const node = this.node(part, of, g)
       if (node === undefined) return 0
-      const top = this.top(node)
+      const top = this.cells.top(node)
       return top.fixed ?? labels.get(top)!
     }
     const { indicators, factorNames } = this
@@ -470,10 +464,4 @@ class CellBuilder {
       factorMeans: this.frame.means ? factorNames.map((f) => cell('factor mean', [f])) : null
     }
   }
-}
-
-/** a, b, ... z, aa, ab, ... */
-function letters(index: number): string {
-  const last = String.fromCharCode(97 + (index % 26))
-  return index < 26 ? last : letters(Math.floor(index / 26) - 1) + last
 }

@@ -8,6 +8,7 @@ import {
   type CellName,
   type CellPart,
   type Change,
+  type ConstraintTerm,
   equalSets,
   namesOfPart,
   type Release,
@@ -82,23 +83,84 @@ function readChanges(nodes: PlanNodes, spot: Spot, path: string): Change[] {
   })
 }
 
+const CHANGE_KINDS = ['free', 'fix', 'equal', 'constrain', 'bound'] as const
+/** Which kind of change each further key goes with. */
+const KEY_OF_KIND = { at: 'fix', to: 'constrain', 'at least': 'bound', 'at most': 'bound' } as const
+
 function readChange(nodes: PlanNodes, spot: Spot): Change {
-  const fields = nodes.fields(spot, 'A change', ['free', 'fix', 'equal', 'at', 'group'])
-  const kinds = (['free', 'fix', 'equal'] as const).filter((kind) => fields.has(kind))
+  const fields = nodes.fields(spot, 'A change', [...CHANGE_KINDS, ...Object.keys(KEY_OF_KIND), 'group'])
+  const kinds = CHANGE_KINDS.filter((kind) => fields.has(kind))
   const kind = kinds[0]
   if (kind === undefined)
-    nodes.fail(spot, 'This change says neither free, fix nor equal.', 'Write "free:", "fix:" or "equal:" and a cell.')
+    nodes.fail(
+      spot,
+      'This change says neither free, fix, equal, constrain nor bound.',
+      'Write "free:", "fix:", "equal:", "constrain:" or "bound:" and a cell.'
+    )
   if (kinds.length > 1)
     nodes.fail(spot, `One change cannot ${kinds.join(' and ')} at once.`, 'Write them as two changes, each with its own dash.')
-  const cells = fields.get(kind)!
-  const at = fields.get('at')
-  if (at !== undefined && kind !== 'fix') nodes.fail(at, `"at" goes with "fix", not with "${kind}".`, 'Remove it.')
+  for (const [key, of] of Object.entries(KEY_OF_KIND)) {
+    const field = fields.get(key)
+    if (field !== undefined && kind !== of) nodes.fail(field, `"${key}" goes with "${of}", not with "${kind}".`, 'Remove it.')
+  }
   const group = readGroup(nodes, fields)
-  if (kind === 'equal') return { do: kind, cells: readEqualCells(nodes, cells), group }
-  const cell = onlyCell(nodes, cells, nodes.fields(cells, 'A cell', cellParts), 'A cell')
-  if (kind === 'free') return { do: kind, cell, group }
+  const value = fields.get(kind)!
+  switch (kind) {
+    case 'equal':
+      return { do: kind, cells: readEqualCells(nodes, value), group }
+    case 'constrain':
+      return { do: kind, terms: readTerms(nodes, value), to: readTotal(nodes, spot, fields), group }
+    case 'bound':
+      return { do: kind, cell: wholeCell(nodes, value), ...readLimits(nodes, spot, fields), group }
+    case 'free':
+      return { do: kind, cell: wholeCell(nodes, value), group }
+    case 'fix':
+      return { do: kind, cell: wholeCell(nodes, value), at: readFixedValue(nodes, spot, fields), group }
+  }
+}
+
+function wholeCell(nodes: PlanNodes, spot: Spot): CellName {
+  return onlyCell(nodes, spot, nodes.fields(spot, 'A cell', cellParts), 'A cell')
+}
+
+function readFixedValue(nodes: PlanNodes, spot: Spot, fields: Map<string, Spot>): number {
+  const at = fields.get('at')
   if (at === undefined) nodes.fail(spot, 'A fixed cell needs its value.', 'Add "at: 0", say.')
-  return { do: kind, cell, at: nodes.number(at, 'The value of a fixed cell'), group }
+  return nodes.number(at, 'The value of a fixed cell')
+}
+
+const TERMS_EXAMPLE = '[{ loading: [sleep, Body], times: 1 }, { loading: [pain, Body], times: -2 }]'
+
+/** `- { loading: [pain, Body], times: -2 }`, one a line: a cell, how many times (1 when left out), and maybe its group. */
+function readTerms(nodes: PlanNodes, spot: Spot): ConstraintTerm[] {
+  const items = nodes.list(spot, 'The terms of a constraint', TERMS_EXAMPLE)
+  if (items.length < 2)
+    nodes.fail(spot, 'A constraint needs at least two terms.', 'Use "fix:" and "at:" for one cell, or write a second term.')
+  return items.map((item) => {
+    const fields = nodes.fields(item, 'A term', [...cellParts, 'times', 'group'])
+    const cell = onlyCell(nodes, item, fields, 'A term')
+    const written = fields.get('times')
+    const times = written === undefined ? 1 : nodes.number(written, 'How many times a cell is taken')
+    if (written !== undefined && times === 0) nodes.fail(written, 'A cell taken 0 times constrains nothing.', 'Remove this term.')
+    return { cell, times, group: readGroup(nodes, fields) }
+  })
+}
+
+function readTotal(nodes: PlanNodes, spot: Spot, fields: Map<string, Spot>): number {
+  const to = fields.get('to')
+  if (to === undefined) nodes.fail(spot, 'A constraint needs the value that its terms sum to.', 'Add "to: 0", say.')
+  return nodes.number(to, 'The value that a constraint sums to')
+}
+
+function readLimits(nodes: PlanNodes, spot: Spot, fields: Map<string, Spot>): { atLeast: number | null; atMost: number | null } {
+  const limit = (key: 'at least' | 'at most') => {
+    const field = fields.get(key)
+    return field === undefined ? null : nodes.number(field, `The bound "${key}"`)
+  }
+  const atLeast = limit('at least')
+  const atMost = limit('at most')
+  if (atLeast === null && atMost === null) nodes.fail(spot, 'A bounded cell needs its bound.', 'Add "at least: 0", say.')
+  return { atLeast, atMost }
 }
 
 function readGroup(nodes: PlanNodes, fields: Map<string, Spot>): string | null {

@@ -22,7 +22,7 @@ export function checkRelease(context: Context, release: Release, path: string): 
 export function checkChange(context: Context, change: Change, path: string): void {
   const { fail } = context
   checkGroup(context, change.group, path)
-  const cells = change.do === 'equal' ? change.cells : [change.cell]
+  const cells = cellsOf(change)
   for (const cell of cells) checkCell(context, cell, path)
   if (change.do === 'equal') {
     if (cells.some((cell) => cell.part !== cells[0]!.part)) fail(path, 'An equality ties cells of one part of the model.')
@@ -30,9 +30,48 @@ export function checkChange(context: Context, change: Change, path: string): voi
     const twice = cells.find((_, i) => seen.indexOf(seen[i]!) < i)
     if (twice !== undefined) fail(path, `The ${twice.part} of ${listed(twice.of)} stands twice in one equality.`, 'Remove one.')
   }
-  if (change.do === 'fix' && change.at < 0 && change.cell.part.endsWith('variance') && !change.cell.part.endsWith('covariance')) {
+  if (change.do === 'fix' && change.at < 0 && isVariance(change.cell)) {
     fail(path, `A ${change.cell.part} cannot be fixed at ${change.at}: a variance is never negative.`)
   }
+  if (change.do === 'constrain') checkTerms(context, change, path)
+  if (change.do === 'bound') checkLimits(context, change, path)
+}
+
+function cellsOf(change: Change): CellName[] {
+  if (change.do === 'equal') return change.cells
+  return change.do === 'constrain' ? change.terms.map((term) => term.cell) : [change.cell]
+}
+
+function isVariance({ part }: CellName): boolean {
+  return part === 'residual variance' || part === 'factor variance'
+}
+
+/** Terms name a group all or none, the change then none; no cell twice. */
+function checkTerms(context: Context, { terms, group }: Extract<Change, { do: 'constrain' }>, path: string): void {
+  const { fail } = context
+  for (const term of terms) {
+    checkGroup(context, term.group, path)
+    if (term.times === 0) fail(path, 'A cell taken 0 times constrains nothing.', 'Remove this term.')
+  }
+  const placed = terms.filter((term) => term.group !== null).length
+  if (placed > 0 && group !== null)
+    fail(path, `The constraint stands in "${group}", and its terms name groups too.`, 'Name the group in one place.')
+  if (placed > 0 && placed < terms.length)
+    fail(path, 'Some terms of this constraint name a group and some do not.', 'Name the group of every term, or of none.')
+  const seen = terms.map((term) => JSON.stringify([cellKey(term.cell), term.group]))
+  const twice = terms.find((_, i) => seen.indexOf(seen[i]!) < i)
+  if (twice !== undefined)
+    fail(path, `The ${twice.cell.part} of ${listed(twice.cell.of)} stands twice in one constraint.`, 'Add the two up.')
+}
+
+function checkLimits({ fail }: Context, { cell, atLeast, atMost }: Extract<Change, { do: 'bound' }>, path: string): void {
+  if (atLeast === null && atMost === null) fail(path, 'A bounded cell needs its bound.', 'Add "at least: 0", say.')
+  if (atLeast !== null && atMost !== null && atLeast >= atMost) {
+    const remedy = atLeast === atMost ? `Write "fix:" and "at: ${atLeast}".` : 'Exchange the two.'
+    fail(path, `Nothing lies between at least ${atLeast} and at most ${atMost}.`, remedy)
+  }
+  if (atMost !== null && atMost <= 0 && isVariance(cell))
+    fail(path, `A ${cell.part} cannot be bounded at most at ${atMost}: a variance is never negative.`)
 }
 
 function checkGroup({ plan, across, fail }: Context, group: string | null, path: string): void {

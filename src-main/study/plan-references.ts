@@ -52,7 +52,8 @@ export function checkPlanAgainstData(
     if (acrossOf(lineageOf(candidate, byName)) !== null && groups.length < 2) {
       throw new InputError(oneGroup(data.grouping), { where: `candidate "${candidate.name}"`, remedy: 'Remove "across".' })
     }
-    for (const item of [...candidate.except, ...candidate.change]) {
+    const terms = candidate.change.flatMap((change) => (change.do === 'constrain' ? change.terms : []))
+    for (const item of [...candidate.except, ...candidate.change, ...terms]) {
       if (item.group !== null && !groups.includes(item.group)) {
         throw new InputError(`There is no group "${item.group}" in the data.`, {
           where: `candidate "${candidate.name}"`,

@@ -3,7 +3,7 @@
  */
 import { Document, isCollection, isMap, isScalar, type Node, type YAMLMap } from 'yaml'
 import { InputError } from './input-error.ts'
-import type { Candidate, CellName, Change, DataPlan, LadderPlan, Plan, Release } from './study.ts'
+import type { Candidate, CellName, Change, ConstraintTerm, DataPlan, LadderPlan, Plan, Release } from './study.ts'
 
 type Plain = string | number | Plain[] | { [key: string]: Plain } | Map<string, Plain>
 
@@ -93,10 +93,23 @@ function releaseValue(release: Release): Plain {
 
 function changeValue(change: Change): Plain {
   return asMap([
-    [change.do, change.do === 'equal' ? equalCells(change.cells) : { [change.cell.part]: cellNames(change.cell) }],
+    [change.do, changedCells(change)],
     ...given('at', change.do === 'fix' ? change.at : null, (at) => at),
+    ...given('to', change.do === 'constrain' ? change.to : null, (to) => to),
+    ...given('at least', change.do === 'bound' ? change.atLeast : null, (atLeast) => atLeast),
+    ...given('at most', change.do === 'bound' ? change.atMost : null, (atMost) => atMost),
     ...given('group', change.group, (group) => group)
   ])
+}
+
+function changedCells(change: Change): Plain {
+  if (change.do === 'equal') return equalCells(change.cells)
+  if (change.do === 'constrain') return change.terms.map(termValue)
+  return { [change.cell.part]: cellNames(change.cell) }
+}
+
+function termValue({ cell, times, group }: ConstraintTerm): Plain {
+  return asMap([[cell.part, cellNames(cell)], ['times', times], ...given('group', group, (name) => name)])
 }
 
 function equalCells(cells: readonly CellName[]): Plain {
@@ -131,7 +144,8 @@ function flowWhereShort(node: Node | null, depth: number): void {
   const isCell = isMap(node) && depth >= 4 && node.items.length === 1 && !isMap(values[0])
   const isThresholds =
     isMap(node) && depth === 2 && leaf && values.every((value) => isScalar(value) && typeof value.value === 'number')
-  if (node.items.length === 0 || isCell || isThresholds || (leaf && !isMap(node))) node.flow = true
+  const isTerm = isMap(node) && depth >= 4 && node.has('times')
+  if (node.items.length === 0 || isCell || isTerm || isThresholds || (leaf && !isMap(node))) node.flow = true
   else for (const value of values) flowWhereShort(value, depth + 1)
 }
 

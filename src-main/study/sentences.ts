@@ -3,7 +3,8 @@
  */
 import { cellWords, listed } from '../statistics/model/cell-words.ts'
 import { type ResolvedCandidate, resolveCandidate } from './candidate-model.ts'
-import type { Candidate, CellName, Change, EqualSet, Release } from './study.ts'
+import { changeWords } from './change-words.ts'
+import type { Candidate, Change, EqualSet, Factor, Release } from './study.ts'
 
 /** What a candidate is, in one sentence: its factors, or what differs from its parent. */
 export function candidateSentence(candidate: Candidate): string {
@@ -11,9 +12,27 @@ export function candidateSentence(candidate: Candidate): string {
   if (candidate.from !== null) {
     return parts.length === 0 ? `The same as ${candidate.from}.` : `From ${candidate.from}: ${parts.join('; ')}.`
   }
-  const factors = (candidate.factors ?? []).map((f) => `${f.name} (${f.measures.join(', ')})`)
-  const several = factors.length > 1 ? (candidate.factorCovariances === 'zero' ? ', uncorrelated' : ', correlated') : ''
-  return `${[listed(factors, factors.length) + several, ...parts].join('; ')}.`
+  return `${[factorsWords(candidate), ...parts].join('; ')}.`
+}
+
+/**
+ * "F (a, b) and G (c, d), correlated"; where factors measure factors, those come after: "..., with General over F and G".
+ * Whether factors are correlated is said of those that no other factor measures, where there are several.
+ */
+function factorsWords({ factors, factorCovariances }: Candidate): string {
+  const all = factors ?? []
+  const names = new Set(all.map((f) => f.name))
+  const measured = new Set(all.flatMap((f) => f.measures.filter((name) => names.has(name))))
+  const isHigher = (f: Factor) => f.measures.some((name) => names.has(name))
+  const lower = all.filter((f) => !isHigher(f)).map((f) => `${f.name} (${f.measures.join(', ')})`)
+  const higher = all.filter(isHigher).map((f) => `${f.name} over ${listed(f.measures, f.measures.length)}`)
+  const words = [listed(lower, lower.length), higher.length === 0 ? null : `with ${listed(higher, higher.length)}`]
+  const top = all.filter((f) => !measured.has(f.name)).map((f) => f.name)
+  if (top.length > 1) {
+    const who = higher.length === 0 ? '' : `${listed(top, top.length)} `
+    words.push(`${who}${factorCovariances === 'zero' ? 'uncorrelated' : 'correlated'}`)
+  }
+  return words.filter((part) => part !== null && part !== '').join(', ')
 }
 
 /** What a candidate itself says beside its factors, each part a clause. */
@@ -37,31 +56,6 @@ function acrossWords(across: string | null, equal: readonly EqualSet[]): string 
 
 function releaseWords({ cell, group }: Release): string {
   return cellWords(cell.part, cell.of, group)
-}
-
-/** One change as a clause: "the residual covariance of a with b is free". */
-export function changeWords(change: Change): string {
-  switch (change.do) {
-    case 'free':
-      return `${cellWords(change.cell.part, change.cell.of, change.group)} is free`
-    case 'fix':
-      return `${cellWords(change.cell.part, change.cell.of, change.group)} is fixed at ${change.at}`
-    case 'equal':
-      return `${cellsWords(change.cells)} are equal${change.group === null ? '' : ` in ${change.group}`}`
-  }
-}
-
-/** "the loadings of a and b on F" where only the first name differs; else one by one. */
-function cellsWords(cells: readonly CellName[]): string {
-  const [first] = cells
-  const alike = first !== undefined && cells.every((cell) => cell.part === first.part && cell.of[1] === first.of[1])
-  if (!alike || first.part === 'residual covariance' || first.part === 'factor covariance') {
-    const words = cells.map((cell) => cellWords(cell.part, cell.of))
-    return listed(words, words.length)
-  }
-  const names = cells.map((cell) => cell.of[0]!)
-  const many = first.part.replace(/variance$/, 'variances').replace(/(loading|intercept|mean|regression)$/, '$1s')
-  return `the ${many} of ${listed(names, names.length)}${first.of[1] === undefined ? '' : ` on ${first.of[1]}`}`
 }
 
 /** What the upper rung adds to the lower, in words; `constraints` is the difference in df where it is known. */
@@ -109,6 +103,8 @@ function changedWords(lower: readonly Change[], upper: readonly Change[]): strin
   const undone = notIn(lower, upper).map((change) => {
     if (change.do === 'free') return `without ${cellWords(change.cell.part, change.cell.of, change.group)}`
     if (change.do === 'fix') return `${cellWords(change.cell.part, change.cell.of, change.group)} is no longer fixed`
+    if (change.do === 'bound') return `${cellWords(change.cell.part, change.cell.of, change.group)} is no longer bounded`
+    if (change.do === 'constrain') return `no longer: ${changeWords(change)}`
     return changeWords(change).replace(/ are equal/, ' are no longer equal')
   })
   return [...undone, ...notIn(upper, lower).map(changeWords)]

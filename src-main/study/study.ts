@@ -44,14 +44,37 @@ export const equalSets = [
 export const equalSetSchema = z.enum(equalSets)
 export type EqualSet = z.infer<typeof equalSetSchema>
 
+/** One term of a linear constraint: `times` the cell; `group` null means the group the constraint stands in. */
+export const constraintTermSchema = z.strictObject({
+  cell: cellNameSchema,
+  times: z.number().default(1),
+  group: name.nullable().default(null)
+})
+export type ConstraintTerm = z.infer<typeof constraintTermSchema>
+
 /**
  * One change that turns a parent into a derived candidate. Without `group` it acts in every group.
- * `free` also takes the cell out of any equality; `fix` fixes that cell alone; `equal` ties the cells together within each group.
+ * `free` also takes the cell out of any equality, constraint and bound before it; `fix` fixes that cell alone; `equal` ties the
+ * cells together within each group; `constrain` makes the sum of times x cell equal `to`, within each group or, where every
+ * term names its group, across groups; `bound` keeps a free cell at or above `atLeast`, at or below `atMost`.
  */
 export const changeSchema = z.discriminatedUnion('do', [
   z.strictObject({ do: z.literal('free'), cell: cellNameSchema, group: name.nullable().default(null) }),
   z.strictObject({ do: z.literal('fix'), cell: cellNameSchema, at: z.number(), group: name.nullable().default(null) }),
-  z.strictObject({ do: z.literal('equal'), cells: z.array(cellNameSchema).min(2), group: name.nullable().default(null) })
+  z.strictObject({ do: z.literal('equal'), cells: z.array(cellNameSchema).min(2), group: name.nullable().default(null) }),
+  z.strictObject({
+    do: z.literal('constrain'),
+    terms: z.array(constraintTermSchema).min(2),
+    to: z.number(),
+    group: name.nullable().default(null)
+  }),
+  z.strictObject({
+    do: z.literal('bound'),
+    cell: cellNameSchema,
+    atLeast: z.number().nullable().default(null),
+    atMost: z.number().nullable().default(null),
+    group: name.nullable().default(null)
+  })
 ])
 export type Change = z.infer<typeof changeSchema>
 

@@ -26,7 +26,21 @@ export function changeInWords(change: Change): string {
       return `fix the ${cellInWords(change.cell)} at ${change.at}${where}`
     case 'equal':
       return `hold equal: ${change.cells.map(cellInWords).join(', ')}${where}`
+    case 'constrain':
+      return `constrain: ${change.terms.map(termInWords).join(' + ')} = ${change.to}${where}`
+    case 'bound': {
+      const limits = [
+        change.atLeast === null ? null : `at least ${change.atLeast}`,
+        change.atMost === null ? null : `at most ${change.atMost}`
+      ]
+      return `keep the ${cellInWords(change.cell)} ${limits.filter((limit) => limit !== null).join(' and ')}${where}`
+    }
   }
+}
+
+/** "-2 x loading of pain on Rest in north" */
+function termInWords({ cell, times, group }: Extract<Change, { do: 'constrain' }>['terms'][number]): string {
+  return `${times === 1 ? '' : `${times} × `}${cellInWords(cell)}${group === null ? '' : ` in ${group}`}`
 }
 
 export function releaseInWords(release: Release): string {

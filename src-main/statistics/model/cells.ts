@@ -2,7 +2,8 @@
  * A model as cells: what each number of its matrices is, in each group (methods: section 1).
  *
  * p indicators, m factors. A number is a fixed value; a string is the label of a free parameter, and the same label in
- * two cells or groups is an equality constraint. `constraints` adds linear equations among labels (effects coding).
+ * two cells or groups is an equality constraint. `constraints` adds linear equations among labels (effects coding, and any
+ * other), `bounds` limits of single labels.
  */
 
 /** The kinds of cell a model is made of; the words of the trade. */
@@ -44,9 +45,18 @@ export interface LinearConstraint {
   equals: number
 }
 
+/** least <= theta <= most; null where that side is open. */
+export interface CellBound {
+  label: string
+  least: number | null
+  most: number | null
+}
+
 export interface ModelCells {
   indicators: string[]
   factors: string[]
   groups: GroupCells[]
   constraints: LinearConstraint[]
+  /** Limits of free cells, at most one a label; none when left out. They leave the degrees of freedom as they are. */
+  bounds?: CellBound[]
 }

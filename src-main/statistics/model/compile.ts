@@ -4,7 +4,8 @@
  * theta (one entry a label) obeys theta = K gamma + c (methods: section 1). Without linear constraints K is the identity;
  * with them the pivots are eliminated, so that gamma is a subset of theta and the q gammas are independent.
  */
-import type { Cell, GroupCells, LinearConstraint, ModelCells } from './cells.ts'
+import type { Cell, CellBound, GroupCells, LinearConstraint, ModelCells } from './cells.ts'
+import { eliminate } from './constraints.ts'
 
 export type MatrixName = 'lambda' | 'beta' | 'psi' | 'theta' | 'nu' | 'alpha'
 
@@ -34,6 +35,11 @@ export interface CompiledGroup {
   free: FreeCell[]
 }
 
+export interface GammaBounds {
+  least: Float64Array
+  most: Float64Array
+}
+
 export interface CompiledModel {
   indicators: string[]
   factors: string[]
@@ -44,6 +50,8 @@ export interface CompiledModel {
   gammaLabels: string[]
   /** q = length of gamma. */
   parameters: number
+  /** Limits of the gammas, q each, infinite where a side is open; null when no gamma has any. */
+  bounds: GammaBounds | null
   meanStructure: boolean
   /** True when some factor has predictors, i.e. B is not zero. */
   hasRegressions: boolean
@@ -62,7 +70,8 @@ export function compileModel(model: ModelCells): CompiledModel {
     theta.set(label, at)
   })
   for (const group of groups) for (const cell of group.free) cell.theta = theta.get(cell.label)!
-  const rows = reduce(labels, model.constraints)
+  const boundOf = new Map((model.bounds ?? []).map((bound) => [bound.label, bound]))
+  const rows = reduce(labels, model.constraints, new Set(boundOf.keys()))
   for (const group of groups) for (const cell of group.free) Object.assign(cell, rows.cells[cell.theta])
   const moments = groups.length * ((p * (p + 1)) / 2 + (meanStructure ? p : 0))
   return {
@@ -72,9 +81,21 @@ export function compileModel(model: ModelCells): CompiledModel {
     labels,
     gammaLabels: rows.gammaLabels,
     parameters: rows.gammaLabels.length,
+    bounds: gammaBounds(rows.gammaLabels, boundOf),
     meanStructure,
     hasRegressions: groups.some((g) => g.beta.some((v) => v !== 0) || g.free.some((c) => c.matrix === 'beta')),
     df: moments - rows.gammaLabels.length
+  }
+}
+
+/** Throws a plain Error on a bound of what is no gamma: a label that is not in the model, or that the constraints give away. */
+function gammaBounds(gammaLabels: readonly string[], boundOf: ReadonlyMap<string, CellBound>): GammaBounds | null {
+  if (boundOf.size === 0) return null
+  for (const label of boundOf.keys())
+    if (!gammaLabels.includes(label)) throw new Error(`the bounded label ${label} is no parameter`)
+  return {
+    least: Float64Array.from(gammaLabels, (label) => boundOf.get(label)?.least ?? Number.NEGATIVE_INFINITY),
+    most: Float64Array.from(gammaLabels, (label) => boundOf.get(label)?.most ?? Number.POSITIVE_INFINITY)
   }
 }
 
@@ -146,45 +167,19 @@ interface ReducedRow {
   weights: Float64Array
 }
 
-/** Gauss-Jordan elimination of A theta = b; the largest coefficient of each equation is its pivot. */
-function reduce(labels: string[], constraints: LinearConstraint[]): { cells: ReducedRow[]; gammaLabels: string[] } {
+/** A theta = b solved for its pivots, so that the labels left over are the gammas. */
+function reduce(
+  labels: string[],
+  constraints: readonly LinearConstraint[],
+  bounded: ReadonlySet<string>
+): { cells: ReducedRow[]; gammaLabels: string[] } {
   const t = labels.length
-  const index = new Map(labels.map((label, i) => [label, i]))
-  const equations = constraints.map((constraint) => {
-    const row = new Float64Array(t + 1)
-    for (const term of constraint.terms) {
-      const at = index.get(term.label)
-      if (at === undefined) throw new Error(`constraint names the unknown label ${term.label}`)
-      row[at]! += term.weight
-    }
-    row[t] = constraint.equals
-    return row
-  })
-  const pivots = eliminate(equations, t)
+  const { pivots, standing } = eliminate(labels, constraints, bounded)
+  if (standing.includes('contradictory')) throw new Error('the constraints contradict each other')
   const gammaOf = new Map<number, number>()
   for (let i = 0; i < t; i++) if (!pivots.has(i)) gammaOf.set(i, gammaOf.size)
   const cells = labels.map((_, i) => reducedRow(i, t, pivots.get(i), gammaOf))
   return { cells, gammaLabels: labels.filter((_, i) => gammaOf.has(i)) }
-}
-
-function eliminate(equations: Float64Array[], t: number): Map<number, Float64Array> {
-  const pivots = new Map<number, Float64Array>()
-  for (const row of equations) {
-    let pivot = 0
-    for (let i = 1; i < t; i++) if (Math.abs(row[i]!) > Math.abs(row[pivot]!)) pivot = i
-    const size = row[pivot] ?? 0
-    if (Math.abs(size) < 1e-12) {
-      if (Math.abs(row[t]!) > 1e-12) throw new Error('the constraints contradict each other')
-      continue
-    }
-    for (let i = 0; i <= t; i++) row[i]! /= size
-    for (const other of equations) {
-      const factor = other === row ? 0 : other[pivot]!
-      if (factor !== 0) for (let i = 0; i <= t; i++) other[i]! -= factor * row[i]!
-    }
-    pivots.set(pivot, row)
-  }
-  return pivots
 }
 
 function reducedRow(i: number, t: number, equation: Float64Array | undefined, gammaOf: Map<number, number>): ReducedRow {

@@ -1,0 +1,68 @@
+/**
+ * One change of a candidate in words: a clause for sentences about candidates and about what is wrong with one.
+ */
+import { cellWords, listed } from '../statistics/model/cell-words.ts'
+import type { CellName, Change, ConstraintTerm } from './study.ts'
+
+/** One change as a clause: "the residual covariance of a with b is free". */
+export function changeWords(change: Change): string {
+  switch (change.do) {
+    case 'free':
+      return `${cellWords(change.cell.part, change.cell.of, change.group)} is free`
+    case 'fix':
+      return `${cellWords(change.cell.part, change.cell.of, change.group)} is fixed at ${change.at}`
+    case 'equal':
+      return `${cellsWords(change.cells)} are equal${change.group === null ? '' : ` in ${change.group}`}`
+    case 'constrain':
+      return constraintWords(change)
+    case 'bound':
+      return `${cellWords(change.cell.part, change.cell.of, change.group)} is ${limitWords(change.atLeast, change.atMost)}`
+  }
+}
+
+/** "at least 0", "between -1 and 1" */
+export function limitWords(atLeast: number | null, atMost: number | null): string {
+  if (atLeast !== null && atMost !== null) return `between ${atLeast} and ${atMost}`
+  return atLeast !== null ? `at least ${atLeast}` : `at most ${atMost}`
+}
+
+export type Constraint = Extract<Change, { do: 'constrain' }>
+
+/** "the loading of a on F equals twice the loading of b on F"; beyond two opposite terms, "a plus 3 times b is 2". */
+export function constraintWords({ terms, to, group }: Constraint): string {
+  const where = group === null ? '' : ` in ${group}`
+  const [first, second] = terms
+  if (terms.length === 2 && to === 0 && first!.times * second!.times < 0) {
+    const [one, many] = Math.abs(first!.times) <= Math.abs(second!.times) ? [first!, second!] : [second!, first!]
+    // The cell taken less often is the larger: one x a = many x b.
+    const ratio = Math.abs(many.times / one.times)
+    return `${termCell(one)} equals ${timesWords(ratio)}${termCell(many)}${where}`
+  }
+  const sum = terms.map((term, i) => {
+    const sign = i === 0 ? (term.times < 0 ? 'minus ' : '') : term.times < 0 ? ' minus ' : ' plus '
+    return `${sign}${timesWords(Math.abs(term.times))}${termCell(term)}`
+  })
+  return `${sum.join('')} is ${to}${where}`
+}
+
+function termCell({ cell, group }: ConstraintTerm): string {
+  return cellWords(cell.part, cell.of, group)
+}
+
+function timesWords(times: number): string {
+  if (times === 1) return ''
+  return times === 2 ? 'twice ' : `${Number(times.toPrecision(6))} times `
+}
+
+/** "the loadings of a and b on F" where only the first name differs; else one by one. */
+function cellsWords(cells: readonly CellName[]): string {
+  const [first] = cells
+  const alike = first !== undefined && cells.every((cell) => cell.part === first.part && cell.of[1] === first.of[1])
+  if (!alike || first.part === 'residual covariance' || first.part === 'factor covariance') {
+    const words = cells.map((cell) => cellWords(cell.part, cell.of))
+    return listed(words, words.length)
+  }
+  const names = cells.map((cell) => cell.of[0]!)
+  const many = first.part.replace(/variance$/, 'variances').replace(/(loading|intercept|mean|regression)$/, '$1s')
+  return `the ${many} of ${listed(names, names.length)}${first.of[1] === undefined ? '' : ` on ${first.of[1]}`}`
+}

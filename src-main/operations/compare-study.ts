@@ -4,22 +4,16 @@
  *     family -> cells and moments of each candidate -> fits (by the crew) -> relations of adjacent rungs -> result
  */
 import { informationWeights } from '../statistics/comparison/difference-test.ts'
-import { ladderRungs } from '../study/ladders.ts'
+import { standingLadders } from '../study/ladders.ts'
 import type { CandidateResult, LadderResult, StudyResult } from '../study/result.ts'
-import { addsWords, candidateSentence } from '../study/sentences.ts'
-import type { Candidate, DataSet, LadderPlan, Origin, Plan } from '../study/study.ts'
-import type { Crew, FitOutcome, RelationOutcome } from '../workers/jobs.ts'
+import { candidateSentence } from '../study/sentences.ts'
+import type { Candidate, DataSet, Origin, Plan } from '../study/study.ts'
+import type { Crew } from '../workers/jobs.ts'
+import { climb, momentsKey } from './climb.ts'
 import type { WorkEvent } from './contract.ts'
 import { dataSummary } from './data-summary.ts'
-import { digestOf, type Entry, entriesOf } from './entries.ts'
+import { type Entry, entriesOf, type StudyMemory } from './entries.ts'
 import { familyOf } from './family.ts'
-import { ladderResult, type StepGround } from './ladder-result.ts'
-
-/** Fits and proofs already made, by digest; given and added to. A digest covers the model, the data, the settings and the program version. */
-export interface StudyMemory {
-  fits: Map<string, FitOutcome>
-  relations: Map<string, RelationOutcome>
-}
 
 export interface CompareInput {
   plan: Plan
@@ -49,8 +43,8 @@ export async function compareStudy(input: CompareInput, crew: Crew, options: Com
   )
   const results = candidateResults(entries, input.memory)
   const ladders: LadderResult[] = []
-  for (const ladder of input.plan.ladders)
-    ladders.push(await climb(ladder, input, entries, results, family.candidates, crew, options))
+  for (const ladder of standingLadders(input.plan.ladders))
+    ladders.push(await climb(ladder, { ...input, entries, results, family: family.candidates }, crew, options.signal))
   return {
     study: input.plan.study,
     program: { name: 'rungwise', version: input.version },
@@ -135,61 +129,4 @@ function weigh(entries: Entry[], results: CandidateResult[]): void {
       for (const result of names) Object.assign(result, { aicWeight: aic[k], bicWeight: bic[k] })
     })
   }
-}
-
-function momentsKey({ cells }: Entry): string {
-  return JSON.stringify([cells.indicators, cells.groups.map((g) => g.name)])
-}
-
-async function climb(
-  ladder: LadderPlan,
-  input: CompareInput,
-  entries: Entry[],
-  results: CandidateResult[],
-  family: Candidate[],
-  crew: Crew,
-  options: CompareOptions
-): Promise<LadderResult> {
-  const rungs = ladderRungs(ladder, input.plan.candidates)
-  const entry = (name: string) => entries.find((e) => e.candidate.name === name)!
-  const result = (name: string) => results.find((r) => r.name === name) ?? null
-  const grounds: StepGround[] = []
-  for (let i = 1; i < rungs.length; i++) {
-    const [from, to] = [rungs[i - 1]!, rungs[i]!]
-    const [lower, upper] = [result(from), result(to)]
-    const sameMoments = momentsKey(entry(from)) === momentsKey(entry(to))
-    const relation = sameMoments ? await relate(entry(from), entry(to), input, crew, options) : null
-    const constraints = lower !== null && upper !== null ? upper.df - lower.df : null
-    grounds.push({ from, to, lower, upper, adds: addsWords(from, to, family, constraints), sameMoments, relation })
-  }
-  return ladderResult(ladder.name, rungs, grounds, input.plan.rules)
-}
-
-/** The proved relation of two candidates with solutions; null when one has none. Remembered by both digests. */
-async function relate(
-  lower: Entry,
-  upper: Entry,
-  { memory }: CompareInput,
-  crew: Crew,
-  { signal }: CompareOptions
-): Promise<RelationOutcome | null> {
-  const general = memory.fits.get(lower.digest)
-  const restricted = memory.fits.get(upper.digest)
-  if (general?.gamma == null || restricted?.gamma == null) return null
-  const digest = digestOf({ general: lower.digest, restricted: upper.digest })
-  const known = memory.relations.get(digest)
-  if (known !== undefined) return known
-  const outcome = await crew.relation(
-    {
-      kind: 'relation',
-      general: lower.cells,
-      generalGamma: general.gamma,
-      restricted: upper.cells,
-      restrictedGamma: restricted.gamma,
-      sizes: lower.sample.moments.groups.map((g) => g.n)
-    },
-    signal
-  )
-  memory.relations.set(digest, outcome)
-  return outcome
 }

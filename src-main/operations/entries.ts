@@ -4,8 +4,15 @@
 import { createHash } from 'node:crypto'
 import type { ModelCells } from '../statistics/model/cells.ts'
 import type { Candidate, DataSet, Origin, Plan } from '../study/study.ts'
+import type { FitOutcome, RelationOutcome } from '../workers/jobs.ts'
 import { type CandidateSample, sampleSource } from './candidate-moments.ts'
 import { cellsOf, type Family, sampleOf } from './family.ts'
+
+/** Fits and proofs already made, by digest; given and added to. A digest covers the model, the data, the settings and the program version. */
+export interface StudyMemory {
+  fits: Map<string, FitOutcome>
+  relations: Map<string, RelationOutcome>
+}
 
 export interface Entry {
   candidate: Candidate

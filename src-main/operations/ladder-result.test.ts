@@ -71,7 +71,7 @@ describe('a verdict', () => {
     const result = ladderResult('l', ['a', 'b'], [ground(cleared, side('b', 24, 22))], rules())
     expect(result.steps[0]).toMatchObject({ verdict: 'holds', noTest: null, relation: 'nested', proof: 'constraints' })
     expect(result.steps[0]!.because).toBe(
-      'The chi-square difference is 4.00 on 2 df, p = .135, Holm p = .135: not significant at alpha = .05.'
+      'The chi-square difference is 4.00 on 2 df, p = .135, Holm p = .135: not significant at alpha = .05. RMSEA of the difference .045 [.000, .109].'
     )
     expect(result.standHere).toBe('b')
   })
@@ -88,7 +88,7 @@ describe('a verdict', () => {
     expect(step(upper, { decideBy: 'difference test', changeInFit }).verdict).toBe('does not hold')
     const byFit = step(upper, { decideBy: 'change in fit', changeInFit })
     expect(byFit.verdict).toBe('holds')
-    expect(byFit.because).toContain("within the rules' thresholds")
+    expect(byFit.because).toContain('within the thresholds of the rules')
     expect(step(upper, { decideBy: 'change in fit', changeInFit: { cfi: -0.001 } }).verdict).toBe('does not hold')
   })
 
@@ -167,4 +167,71 @@ it('differences are the upper value less the lower', () => {
   expect(result.deltaCfi!).toBeLessThan(0)
   expect(result.deltaRmsea!).toBeGreaterThan(0)
   expect(result.deltaAic!).toBeCloseTo(40 - 20 - 4, 10)
+})
+
+describe('the test that is valid for the very pair', () => {
+  const scaled = (T: number, scaling: number) => ({ scaled: { T: T / scaling, p: 0.5, scaling, form: 'Satorra & Bentler 1994' } })
+
+  it('is the scaled difference where both statistics are scaled: c_d = (22 x 1.2 - 20 x 1.1) / 2 = 2.2 by hand', () => {
+    const lower = side('a', 20, 20, scaled(20, 1.1))
+    const upper = side('b', 31, 22, scaled(31, 1.2))
+    const { difference } = ladderResult('l', ['a', 'b'], [ground(lower, upper)], rules()).steps[0]!
+    expect(difference).toMatchObject({ method: 'scaled', df: 2 })
+    expect(difference!.scaling).toBeCloseTo(2.2, 12)
+    expect(difference!.T).toBeCloseTo(5, 12)
+  })
+
+  it('is the strictly positive form where the first is not defined, or where the rules ask for it', () => {
+    const lower = side('a', 20, 20, scaled(20, 1.4))
+    const upper = side('b', 31, 22, scaled(31, 1.2))
+    const withScaling = ground(lower, upper, { scalingAtUpper: 1.1 })
+    expect(ladderResult('l', ['a', 'b'], [withScaling], rules()).steps[0]!.difference).toMatchObject({
+      method: 'strictly positive scaled',
+      df: 2
+    })
+    const asked = ladderResult(
+      'l',
+      ['a', 'b'],
+      [ground(side('a', 20, 20, scaled(20, 1.1)), upper, { scalingAtUpper: 1.15 })],
+      rules({ scaledDifference: 'strictly positive' })
+    )
+    expect(asked.steps[0]!.difference!.method).toBe('strictly positive scaled')
+    expect(ladderResult('l', ['a', 'b'], [ground(lower, upper)], rules()).steps[0]!.verdict).toBe('no test')
+  })
+
+  it('is a mixture on the boundary: half of the usual p for one parameter, said in words', () => {
+    const parts = [
+      { df: 0, weight: 0.5 },
+      { df: 1, weight: 0.5 }
+    ]
+    const boundary = { words: 'A and B become one factor', parts, beyond: false }
+    const upper = side('b', 23, 21)
+    const plain = ladderResult('l', ['a', 'b'], [ground(cleared, upper)], rules()).steps[0]!
+    const mixed = ladderResult('l', ['a', 'b'], [ground(cleared, upper, { boundary })], rules()).steps[0]!
+    expect(mixed.difference!.p).toBeCloseTo(plain.difference!.p / 2, 12)
+    expect(mixed.difference!.method).toBe('boundary mixture')
+    // 2.706 is the .10 point of chi-square on 1 df (any table).
+    expect(mixed.difference!.critical).toBeCloseTo(2.706, 3)
+    expect([plain.verdict, mixed.verdict]).toEqual(['holds', 'does not hold'])
+    expect(mixed.because).toContain('A and B become one factor')
+    const beyond = ladderResult('l', ['a', 'b'], [ground(cleared, upper, { boundary: { ...boundary, beyond: true } })], rules())
+      .steps[0]!
+    expect([beyond.difference!.T, beyond.difference!.p, beyond.verdict]).toEqual([0, 1, 'holds'])
+  })
+
+  it('follows a published rule by its citation: Chen (2007) asks more of small samples and of intercepts', () => {
+    const upper = side('b', 25, 22)
+    const chen = { decideBy: 'change in fit', changeInFit: { preset: 'Chen 2007' } }
+    const verdict = (sizes: number[], n: number) =>
+      ladderResult(
+        'l',
+        ['a', 'b'],
+        [ground(cleared, { ...upper, n, srmr: cleared.srmr! + 0.008 }, { sizes, addsLoadings: false })],
+        rules(chen)
+      ).steps[0]!
+    expect(verdict([250, 250], 500).because).toContain('Chen 2007')
+    expect(verdict([250, 250], 500).because).toContain('(at most +.010 asked)')
+    expect(verdict([100, 100], 200).because).toContain('(at most +.005 asked)')
+    expect(verdict([400, 100], 500).because).toContain('(at most +.005 asked)')
+  })
 })

@@ -3,9 +3,13 @@
  *
  * A comparison that is not valid is refused before it is computed, with the reason.
  */
-import { pIs, signedIndex, statistic } from '../reporting/numbers.ts'
-import { criticalValue, type DifferenceTest, holm, normalDifference } from '../statistics/comparison/difference-test.ts'
-import type { CandidateResult, LadderResult, StepResult, Verdict } from '../study/result.ts'
+import { index, pIs, signedIndex, statistic } from '../reporting/numbers.ts'
+import { criticalLevel, type DifferenceTest, holm, normalDifference } from '../statistics/comparison/difference-test.ts'
+import { type ScaledSide, scaledDifference, strictlyPositiveDifference } from '../statistics/comparison/scaled-difference.ts'
+import { chiBarSquareQuantile, chiBarSquareUpper, type MixturePart } from '../statistics/distributions/mixtures.ts'
+import { rmsea } from '../statistics/fit/indices.ts'
+import type { CandidateResult, DifferenceResult, LadderResult, StepResult, Verdict } from '../study/result.ts'
+import { thresholdsFor } from '../study/rule-presets.ts'
 import type { Rules } from '../study/study.ts'
 import type { RelationOutcome } from '../workers/jobs.ts'
 
@@ -20,10 +24,25 @@ export interface StepGround {
   sameMoments: boolean
   /** null where it was not asked, because a side has no solution. */
   relation: RelationOutcome | null
+  /** Scaled statistics: the scaling of the lower rung at the upper's estimates, where the strictly positive form is needed. */
+  scalingAtUpper?: number | null
+  /** The parameters that the upper rung puts on their boundary; null when there are none. */
+  boundary?: BoundaryGround | null
+  /** Cases per group, and whether the step adds equal loadings: what published rules look at. */
+  sizes?: readonly number[]
+  addsLoadings?: boolean
+}
+
+export interface BoundaryGround {
+  words: string
+  /** Parts of the mixture on the df of the step; null where more parameters lie on the boundary than weights are known for. */
+  parts: MixturePart[] | null
+  /** True when the lower rung's estimate lies beyond the bound: within it, the upper rung fits as well. */
+  beyond: boolean
 }
 
 export function ladderResult(name: string, rungs: string[], grounds: readonly StepGround[], rules: Rules): LadderResult {
-  const tests = grounds.map(testOf)
+  const tests = grounds.map((ground) => testOf(ground, rules))
   const pValues = tests.filter((test) => test !== null).map((test) => test.p)
   const adjusted = holm(pValues)
   let at = 0
@@ -34,11 +53,44 @@ export function ladderResult(name: string, rungs: string[], grounds: readonly St
   return { name, rungs, standHere: standHere(rungs, grounds, steps), steps }
 }
 
-/** The chi-square difference, where it is licensed. */
-function testOf(ground: StepGround): DifferenceTest | null {
+type StepTest = DifferenceTest & Pick<DifferenceResult, 'method' | 'scaling'> & { reference: MixturePart[] }
+
+/** The test that is valid for this very pair; null where none is. */
+function testOf(ground: StepGround, rules: Rules): StepTest | null {
   if (refusal(ground) !== null || ground.relation?.relation !== 'nested') return null
-  const { lower, upper } = ground
-  return normalDifference({ T: upper!.T!, df: upper!.df }, { T: lower!.T!, df: lower!.df })
+  const plain = isScaled(ground)
+    ? scaledTest(ground, rules)
+    : { ...normalDifference(sideOf(ground.upper!), sideOf(ground.lower!)), scaling: null, method: 'normal theory' as const }
+  if (plain === null) return null
+  const chiSquare = [{ df: plain.df, weight: 1 }]
+  const { boundary } = ground
+  if (boundary?.parts == null) return { ...plain, reference: chiSquare }
+  const T = boundary.beyond ? 0 : plain.T
+  return { ...plain, T, p: chiBarSquareUpper(T, boundary.parts), method: 'boundary mixture', reference: boundary.parts }
+}
+
+function sideOf({ T, df, scaled }: CandidateResult): ScaledSide {
+  return { T: T!, df, scaling: scaled?.scaling ?? Number.NaN }
+}
+
+/** Both sides carry a scaled statistic (or have no df to scale). */
+export function isScaled({ lower, upper }: Pick<StepGround, 'lower' | 'upper'>): boolean {
+  return upper?.scaled != null && (lower?.scaled != null || lower?.df === 0)
+}
+
+/** Satorra & Bentler 2001 where it is defined and the rules leave it the choice, else the strictly positive form of 2010. */
+function scaledTest({ lower, upper, scalingAtUpper }: StepGround, rules: Rules) {
+  const ordinary = rules.scaledDifference === 'ordinary' ? scaledDifference(sideOf(upper!), sideOf(lower!)) : null
+  if (ordinary !== null) return ordinary
+  return scalingAtUpper == null && lower!.df > 0
+    ? null
+    : strictlyPositiveDifference(sideOf(upper!), sideOf(lower!), scalingAtUpper ?? 0)
+}
+
+/** Whether the test of this pair needs the lower rung's scaling at the upper rung's estimates. */
+export function needsScalingAtUpper(lower: CandidateResult, upper: CandidateResult, rules: Rules): boolean {
+  if (!isScaled({ lower, upper }) || lower.df === 0) return false
+  return rules.scaledDifference === 'strictly positive' || scaledDifference(sideOf(upper), sideOf(lower)) === null
 }
 
 interface Refusal {
@@ -90,7 +142,7 @@ function localMinimum(from: string, to: string): Refusal {
   }
 }
 
-function stepResult(ground: StepGround, test: DifferenceTest | null, holmP: number | null, rules: Rules): StepResult {
+function stepResult(ground: StepGround, test: StepTest | null, holmP: number | null, rules: Rules): StepResult {
   const { from, to, lower, upper, adds, relation } = ground
   const refused = refusal(ground)
   const named = relation === null || relation.relation === 'reversed' ? null : relation.relation
@@ -110,6 +162,8 @@ function stepResult(ground: StepGround, test: DifferenceTest | null, holmP: numb
     deltaCfi: delta((s) => s.cfi),
     deltaRmsea: delta((s) => s.rmsea.estimate),
     deltaSrmr: delta((s) => s.srmr),
+    deltaMcdonald: delta((s) => s.mcdonald),
+    deltaGammaHat: delta((s) => s.gammaHat),
     deltaAic: delta((s) => s.aic),
     deltaBic: delta((s) => s.bic),
     verdict: 'no test',
@@ -117,28 +171,48 @@ function stepResult(ground: StepGround, test: DifferenceTest | null, holmP: numb
     because: refused?.sentence ?? ''
   }
   if (refused !== null) return step
-  if (test === null) return { ...step, verdict: 'holds', because: equivalentSentence(from, to) }
-  const difference = {
-    ...test,
+  if (relation?.relation === 'equivalent') return { ...step, verdict: 'holds', because: equivalentSentence(from, to) }
+  if (test === null) return { ...step, noTest: 'the scaling of the difference is not defined', because: undefinedScaling }
+  const difference = differenceResult(test, holmP, rules, upper!)
+  return { ...step, difference, ...judge({ ...step, difference }, ground, rules) }
+}
+
+const undefinedScaling =
+  'No scaling factor of the difference could be computed from these data, so the scaled statistics of the two cannot be compared by a test.'
+
+function differenceResult(
+  { T, df, p, method, scaling, reference }: StepTest,
+  holmP: number | null,
+  rules: Rules,
+  upper: CandidateResult
+): DifferenceResult {
+  const level = criticalLevel(p, holmP ?? p, rules.alpha)
+  const { estimate, lower, upper: top } = rmsea(T, df, upper.n, upper.groups)
+  return {
+    T,
+    df,
+    p,
     holmP,
-    method: 'normal theory' as const,
-    critical: criticalValue(test, holmP ?? test.p, rules.alpha)
+    method,
+    scaling,
+    critical: chiBarSquareQuantile(level, reference),
+    rmsea: { estimate, lower, upper: top }
   }
-  return { ...step, difference, ...judge({ ...step, difference }, rules) }
 }
 
 function equivalentSentence(from: string, to: string): string {
   return `${to} and ${from} are equivalent: the same degrees of freedom and, whatever the data, the same fit; nothing is given up, and no data can tell them apart.`
 }
 
-function judge(step: StepResult, rules: Rules): { verdict: Verdict; because: string } {
-  const test = testCriterion(step, rules)
-  const change = changeCriterion(step, rules)
-  if (rules.decideBy === 'difference test') return { verdict: verdictOf(test.holds), because: `${test.sentence}.` }
+function judge(step: StepResult, ground: StepGround, rules: Rules): { verdict: Verdict; because: string } {
+  const test = testCriterion(step, ground, rules)
+  const change = changeCriterion(step, ground, rules)
+  const size = sizeSentence(step.difference!)
+  if (rules.decideBy === 'difference test') return { verdict: verdictOf(test.holds), because: `${test.sentence}. ${size}` }
   if (change === null)
     return { verdict: 'no test', because: 'The rules decide by change in fit, but none of its thresholds applies to this step.' }
   if (rules.decideBy === 'change in fit') return { verdict: verdictOf(change.holds), because: `${change.sentence}.` }
-  const because = `${test.sentence}; ${change.sentence}.`
+  const because = `${test.sentence}; ${change.sentence}. ${size}`
   if (test.holds === change.holds) return { verdict: verdictOf(test.holds), because }
   return { verdict: 'criteria disagree', because: `${because} The rules ask for both, and they disagree.` }
 }
@@ -152,13 +226,34 @@ interface Criterion {
   sentence: string
 }
 
-function testCriterion({ difference }: StepResult, { alpha }: Rules): Criterion {
-  const { T, df, p, holmP } = difference!
+const methodWords: Record<DifferenceResult['method'], string> = {
+  'normal theory': 'chi-square difference',
+  scaled: 'scaled chi-square difference (Satorra & Bentler 2001)',
+  'strictly positive scaled': 'scaled chi-square difference in its strictly positive form (Satorra & Bentler 2010)',
+  'boundary mixture': 'chi-square difference, referred to a mixture of chi-squares,'
+}
+
+function testCriterion({ difference }: StepResult, { boundary }: StepGround, { alpha }: Rules): Criterion {
+  const { T, df, p, holmP, method } = difference!
   const holds = (holmP ?? p) >= alpha
   const adjusted = holmP === null ? '' : `, ${pIs('Holm p', holmP)}`
   const significant = holds ? 'not significant' : 'significant'
-  const numbers = `The chi-square difference is ${statistic(T)} on ${df} df, ${pIs('p', p)}${adjusted}`
-  return { holds, sentence: `${numbers}: ${significant} at alpha = ${levelText(alpha)}` }
+  const numbers = `The ${methodWords[method]} is ${statistic(T)} on ${df} df, ${pIs('p', p)}${adjusted}`
+  return { holds, sentence: `${numbers}: ${significant} at alpha = ${levelText(alpha)}${boundaryClause(boundary ?? null)}` }
+}
+
+/** Why the reference is a mixture, or that it should be one. */
+function boundaryClause(boundary: BoundaryGround | null): string {
+  if (boundary === null) return ''
+  if (boundary.parts === null)
+    return `. The p-value is too large, for the hypothesis lies on the boundary in more ways than weights are known for: ${boundary.words}`
+  const beyond = boundary.beyond ? '; the estimate lies beyond that bound, and within it the two fit alike' : ''
+  return `. The mixture is due because the hypothesis lies on the boundary of what is possible: ${boundary.words}${beyond}`
+}
+
+/** How large the step is, whatever its p: with a large N a tiny step is rejected exactly. */
+function sizeSentence({ rmsea: { estimate, lower, upper } }: DifferenceResult): string {
+  return `RMSEA of the difference ${index(estimate)} [${index(lower)}, ${index(upper)}].`
 }
 
 /** alpha as the user wrote it, without the leading zero. */
@@ -167,34 +262,36 @@ function levelText(alpha: number): string {
 }
 
 /** Every threshold the rules give and the step has; null when none applies. */
-function changeCriterion(step: StepResult, { changeInFit }: Rules): Criterion | null {
+function changeCriterion(step: StepResult, { upper, sizes, addsLoadings }: StepGround, rules: Rules): Criterion | null {
+  const limits = thresholdsFor(rules, { n: upper!.n, sizes: sizes ?? [upper!.n], loadings: addsLoadings ?? false })
+  if (limits === null) return null
+  const atLeast = (name: string, delta: number | null, limit: number | null) =>
+    check(name, delta, limit, (d, l) => d >= l, 'at least')
+  const atMost = (name: string, delta: number | null, limit: number | null) =>
+    check(name, delta, limit, (d, l) => d <= l, 'at most')
   const checks = [
-    { name: 'CFI', delta: step.deltaCfi, limit: changeInFit?.cfi ?? null, ok: (d: number, l: number) => d >= l, words: 'at least' },
-    {
-      name: 'RMSEA',
-      delta: step.deltaRmsea,
-      limit: changeInFit?.rmsea ?? null,
-      ok: (d: number, l: number) => d <= l,
-      words: 'at most'
-    },
-    {
-      name: 'SRMR',
-      delta: step.deltaSrmr,
-      limit: changeInFit?.srmr ?? null,
-      ok: (d: number, l: number) => d <= l,
-      words: 'at most'
-    }
-  ].flatMap(({ name, delta, limit, ok, words }) =>
-    delta === null || limit === null
-      ? []
-      : [{ holds: ok(delta, limit), text: `${name} changes by ${signedIndex(delta)} (${words} ${signedIndex(limit)} asked)` }]
-  )
+    ...atLeast('CFI', step.deltaCfi, limits.cfi),
+    ...atMost('RMSEA', step.deltaRmsea, limits.rmsea),
+    ...atMost('SRMR', step.deltaSrmr, limits.srmr),
+    ...atLeast("McDonald's index", step.deltaMcdonald, limits.mcdonald),
+    ...atLeast('gamma-hat', step.deltaGammaHat, limits.gammaHat)
+  ]
   if (checks.length === 0) return null
-  const holds = checks.every((check) => check.holds)
-  return {
-    holds,
-    sentence: `${checks.map((check) => check.text).join(', ')}: ${holds ? 'within' : 'beyond'} the rules' thresholds`
-  }
+  const holds = checks.every((one) => one.holds)
+  const source = rules.changeInFit?.preset ?? 'the rules'
+  const within = holds ? 'within' : 'beyond'
+  return { holds, sentence: `${checks.map((one) => one.text).join(', ')}: ${within} the thresholds of ${source}` }
+}
+
+function check(
+  name: string,
+  delta: number | null,
+  limit: number | null,
+  ok: (delta: number, limit: number) => boolean,
+  words: string
+): { holds: boolean; text: string }[] {
+  if (delta === null || limit === null) return []
+  return [{ holds: ok(delta, limit), text: `${name} changes by ${signedIndex(delta)} (${words} ${signedIndex(limit)} asked)` }]
 }
 
 /** Climbs from the bottom while steps hold. */

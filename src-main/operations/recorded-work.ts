@@ -9,7 +9,8 @@ import type { ModelCells } from '../statistics/model/cells.ts'
 import type { StudyResult } from '../study/result.ts'
 import type { Origin, Plan } from '../study/study.ts'
 import type { Crew, FitJob, FitOutcome, RelationJob, RelationOutcome } from '../workers/jobs.ts'
-import { type CompareOptions, compareStudy, type StudyMemory } from './compare-study.ts'
+import { type CompareOptions, compareStudy } from './compare-study.ts'
+import type { StudyMemory } from './entries.ts'
 import { cellsOf, familyOf } from './family.ts'
 
 export interface RecordedWork {
@@ -66,6 +67,7 @@ function watchedCrew(crew: Crew): WatchedCrew {
         relationJobs.set(outcome, job)
         return outcome
       },
+      restrictedScaling: (job, signal) => crew.restrictedScaling(job, signal),
       scoreTests: (job, signal) => crew.scoreTests(job, signal),
       close: () => crew.close()
     }

@@ -2,6 +2,7 @@
  * What the trail says of each kind of event, in one place: a stable code, one sentence for people.
  */
 import type { FitResult, LadderResult, Relation } from '../study/result.ts'
+import { changeInFitWords } from '../study/rule-presets.ts'
 import type { DataSet, Origin, Rules } from '../study/study.ts'
 
 export const quoted = (name: string): string => `\u201c${name}\u201d`
@@ -62,9 +63,7 @@ function addedAs(origin: Origin): string {
 /** The rules as a clause, e.g. "a step holds by its difference test at alpha .05, adjusted over the ladder (Holm)". */
 function rulesInWords(rules: Rules): string {
   const test = `its difference test at alpha ${String(rules.alpha).replace(/^0/, '')}${rules.adjust === 'holm' ? ', adjusted over the ladder (Holm)' : ''}`
-  const limits = Object.entries(rules.changeInFit ?? {})
-    .filter(([, limit]) => limit !== null)
-    .map(([index, limit]) => `${index.toUpperCase()} ${limit}`)
+  const limits = changeInFitWords(rules)
   const change = `its change in fit (${limits.length === 0 ? 'no limits given' : limits.join(', ')})`
   const by = { 'difference test': test, 'change in fit': change, both: `${test}, and by ${change}` }
   return `a step holds by ${by[rules.decideBy]}`

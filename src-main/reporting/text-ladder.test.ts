@@ -1,5 +1,5 @@
 import { describe, expect, test } from 'vitest'
-import type { Estimation, Rules } from '../study/study.ts'
+import { type Estimation, type Rules, rulesSchema } from '../study/study.ts'
 import { handMadeResult } from './testing/hand-made-result.ts'
 import { studyText } from './text-ladder.ts'
 import { textWidth } from './text-lines.ts'
@@ -11,7 +11,7 @@ const estimation: Estimation = {
   missing: 'complete cases',
   standardErrors: 'expected'
 }
-const rules: Rules = { alpha: 0.05, adjust: 'holm', changeInFit: { cfi: -0.01, rmsea: null, srmr: null }, decideBy: 'both' }
+const rules: Rules = rulesSchema.parse({ changeInFit: { cfi: -0.01 }, decideBy: 'both' })
 
 function text(change: (result: ReturnType<typeof handMadeResult>) => void = () => {}, width?: number): string {
   const result = handMadeResult()
@@ -37,7 +37,7 @@ describe('the printed ladder', () => {
   })
 
   test('states the rules that decide', () => {
-    expect(text()).toContain('Rules: alpha .05, Holm over a ladder, decided by both; limits Delta CFI -.010.')
+    expect(text()).toContain('Rules: alpha .05, Holm over a ladder, decided by both; change in fit: CFI -.01.')
   })
 
   test('marks the rung to stand on, and no other', () => {

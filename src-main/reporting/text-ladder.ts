@@ -5,6 +5,7 @@
  * apart from the cases lost (n minus complete) and the length of a gauge's bar.
  */
 import type { CandidateResult, DifferenceResult, LadderResult, StepResult, StudyResult } from '../study/result.ts'
+import { changeInFitWords } from '../study/rule-presets.ts'
 import type { Caution, Estimation, Rules } from '../study/study.ts'
 import { counted, criterion, index, noValue, pIs, pValue, signedCriterion, signedIndex, statistic } from './numbers.ts'
 import { flow, plainName, wrap, wrapSentence } from './text-lines.ts'
@@ -42,42 +43,52 @@ export function studyText(input: TextLadderInput): string {
 function headLines({ result, estimation, rules }: TextLadderInput, width: number): string[] {
   const notes = [...sizeNotes(result), ...result.data.cautions.map(cautionText)]
   return [
-    ...wrap(dataSentence(result), width),
-    ...wrap(
-      `${capital(estimation.method)}, ${estimation.convention} convention, ${estimation.statistic} statistic, ${estimation.missing}.`,
-      width
-    ),
+    ...wrap(dataSentence(result, estimation), width),
+    ...(result.data.normality?.sentence == null ? [] : wrap(plainName(result.data.normality.sentence), width)),
+    ...wrap(estimationSentence(result, estimation), width),
     ...wrap(rulesSentence(rules), width),
     ...notes.flatMap((note) => hanging('! ', note, width, ''))
   ]
 }
 
 /** "912 cases (304 North, ...), 9 indicators; 14 cases lost to missing answers." N is the number used. */
-function dataSentence(result: StudyResult): string {
-  const { groups, indicators } = result.data
-  const used = sum(groups.map((group) => group.complete))
+function dataSentence({ data }: StudyResult, estimation: Estimation): string {
+  const { groups, indicators, missing } = data
+  const everyCase = estimation.missing === 'full information'
+  const sizes = groups.map((group) => ({ name: group.name, n: everyCase ? group.n : group.complete }))
+  const used = sum(sizes.map(({ n }) => n))
+  const parts = sizes.length > 1 ? ` (${sizes.map(({ name, n }) => `${n} ${plainName(name ?? noValue)}`).join(', ')})` : ''
   const lost = sum(groups.map((group) => group.n)) - used
-  const parts =
-    groups.length > 1 ? ` (${groups.map((group) => `${group.complete} ${plainName(group.name ?? noValue)}`).join(', ')})` : ''
-  const losing = lost === 0 ? 'no case lost' : `${counted(lost, 'case', 'cases')} of ${used + lost} lost to missing answers`
+  const answers = `${counted(missing.values, 'answer', 'answers')} missing in ${counted(missing.cases, 'case', 'cases')}`
+  const patterns = counted(missing.patterns.length, 'pattern', 'patterns')
+  const losing = everyCase
+    ? missing.cases === 0
+      ? 'no answer missing'
+      : `${answers}, ${patterns}; complete cases would be ${used - missing.cases}`
+    : lost === 0
+      ? 'no case lost'
+      : `${counted(lost, 'case', 'cases')} of ${used + lost} lost to missing answers`
   return `N = ${used}${parts}, ${counted(indicators.length, 'indicator', 'indicators')}; ${losing}.`
 }
 
+/** How the candidates were fitted, and for scaled statistics by which form and which kind of indices. */
+function estimationSentence({ candidates }: StudyResult, estimation: Estimation): string {
+  const { method, convention, statistic, missing, standardErrors } = estimation
+  const sentence = `${capital(method)}, ${convention} convention, ${statistic} statistic, ${missing}, ${standardErrors} standard errors.`
+  const form = candidates.find((candidate) => candidate.scaled !== null)?.scaled?.form
+  return form === undefined ? sentence : `${sentence} Scaling: ${form}; CFI, TLI and RMSEA are of the population-consistent kind.`
+}
+
 function rulesSentence(rules: Rules): string {
-  const limits = rules.changeInFit
-  const thresholds = [
-    limits?.cfi != null ? `Delta CFI ${signedIndex(limits.cfi)}` : null,
-    limits?.rmsea != null ? `Delta RMSEA ${signedIndex(limits.rmsea)}` : null,
-    limits?.srmr != null ? `Delta SRMR ${signedIndex(limits.srmr)}` : null
-  ].filter((text) => text !== null)
+  const thresholds = changeInFitWords(rules)
   const adjusted = rules.adjust === 'holm' ? 'Holm over a ladder' : 'not adjusted'
-  const limitsText = thresholds.length === 0 ? '' : `; limits ${thresholds.join(', ')}`
+  const limitsText = thresholds.length === 0 ? '' : `; change in fit: ${thresholds.join(', ')}`
   return `Rules: alpha ${String(rules.alpha).replace(/^0/, '')}, ${adjusted}, decided by ${rules.decideBy}${limitsText}.`
 }
 
 /** What the size of the sample does to the tests of exact fit; empty for a sample of ordinary size. */
 function sizeNotes(result: StudyResult): string[] {
-  const used = sum(result.data.groups.map((group) => group.complete))
+  const used = sum(result.data.groups.map((group) => group.n))
   if (used >= manyCases)
     return [`N is ${used}: with N in the thousands nearly every test of exact fit rejects; read the indices beside it.`]
   if (used < fewCases)

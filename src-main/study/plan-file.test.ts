@@ -2,7 +2,16 @@ import { readFileSync } from 'node:fs'
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import { parsePlan, writePlan } from './plan-file.ts'
-import { type Candidate, type Change, cellPartSchema, type DataPlan, equalSets, estimationSchema, type Plan } from './study.ts'
+import {
+  type Candidate,
+  type Change,
+  cellPartSchema,
+  type DataPlan,
+  equalSets,
+  estimationSchema,
+  type Plan,
+  rulesSchema
+} from './study.ts'
 
 const SMALL = 'study: s\ndata: { file: a.csv, indicators: [a, b, c] }\ncandidates:\n  One:\n    factors: { F: [a, b, c] }\n'
 
@@ -36,7 +45,7 @@ describe('reading a plan', () => {
       },
       candidates: [{ ...PLAIN, name: 'One', factors: [{ name: 'F', measures: ['a', 'b', 'c'] }] }],
       ladders: [],
-      rules: { alpha: 0.05, adjust: 'holm', changeInFit: null, decideBy: 'difference test' }
+      rules: rulesSchema.parse({})
     })
   })
 
@@ -273,7 +282,11 @@ function anyPlan(): fc.Arbitrary<Plan> {
         rules: {
           alpha: draw.alpha,
           adjust: draw.rule as 'holm' | 'none',
-          changeInFit: draw.change === null ? null : { cfi: null, rmsea: null, srmr: null, ...draw.change },
+          changeInFit:
+            draw.change === null
+              ? null
+              : { preset: null, cfi: null, rmsea: null, srmr: null, mcdonald: null, gammaHat: null, ...draw.change },
+          scaledDifference: draw.change === null ? ('ordinary' as const) : ('strictly positive' as const),
           decideBy: draw.change !== null && Object.keys(draw.change).length > 0 ? 'both' : 'difference test'
         }
       }

@@ -14,8 +14,11 @@ import {
   type LadderPlan,
   type Plan,
   planSchema,
+  presets,
   type Rules,
-  rulesSchema
+  rulesSchema,
+  type StructuralSet,
+  structuralSets
 } from './study.ts'
 
 export { writePlan } from './plan-writer.ts'
@@ -81,9 +84,10 @@ function readLadders(nodes: PlanNodes, spot: Spot): LadderPlan[] {
     const fields = nodes.fields(
       value,
       `The ladder "${key}"`,
-      ['invariance of', 'across', 'through'],
+      ['invariance of', 'across', 'through', 'and'],
       ['invariance of', 'across', 'through']
     )
+    const and = fields.get('and')
     nodes.mark(`ladders.${i}.invariance of`, fields.get('invariance of')!)
     nodes.mark(`ladders.${i}.across`, fields.get('across')!)
     nodes.mark(`ladders.${i}.through`, fields.get('through')!)
@@ -91,9 +95,21 @@ function readLadders(nodes: PlanNodes, spot: Spot): LadderPlan[] {
       name: key,
       invarianceOf: nodes.name(fields.get('invariance of')!, 'The candidate'),
       across: nodes.name(fields.get('across')!, 'The grouping'),
-      through: nodes.word(fields.get('through')!, 'The highest step', invarianceLevels)
+      through: nodes.word(fields.get('through')!, 'The highest step', invarianceLevels),
+      ...(and === undefined ? {} : { and: readStructural(nodes, and, key, `ladders.${i}.and`) })
     }
   })
+}
+
+/** What is held equal on top of the highest level, each by itself. */
+function readStructural(nodes: PlanNodes, spot: Spot, ladder: string, path: string): StructuralSet[] {
+  nodes.mark(path, spot)
+  const items = nodes.list(spot, `What the ladder "${ladder}" adds`, '[factor variances, factor means]')
+  if (items.length === 0) nodes.fail(spot, `The ladder "${ladder}" adds nothing.`, 'List factor variances, say, or remove "and".')
+  items.forEach((item, k) => {
+    nodes.mark(`${path}.${k}`, item)
+  })
+  return items.map((item) => nodes.word(item, 'What is added', structuralSets))
 }
 
 function readRungs(nodes: PlanNodes, spot: Spot, ladder: string, path: string): string[] {
@@ -106,12 +122,13 @@ function readRungs(nodes: PlanNodes, spot: Spot, ladder: string, path: string): 
 }
 
 function readRules(nodes: PlanNodes, spot: Spot): Rules {
-  const fields = nodes.fields(spot, 'The rules', ['alpha', 'adjust', 'change in fit', 'decide by'])
-  const [alpha, adjust, change, decide] = [
+  const fields = nodes.fields(spot, 'The rules', ['alpha', 'adjust', 'change in fit', 'decide by', 'scaled difference'])
+  const [alpha, adjust, change, decide, scaled] = [
     fields.get('alpha'),
     fields.get('adjust'),
     fields.get('change in fit'),
-    fields.get('decide by')
+    fields.get('decide by'),
+    fields.get('scaled difference')
   ]
   if (decide !== undefined) nodes.mark('rules.decide by', decide)
   return {
@@ -121,7 +138,9 @@ function readRules(nodes: PlanNodes, spot: Spot): Rules {
     decideBy:
       decide === undefined
         ? 'difference test'
-        : nodes.word(decide, '"decide by"', ['difference test', 'change in fit', 'both'] as const)
+        : nodes.word(decide, '"decide by"', ['difference test', 'change in fit', 'both'] as const),
+    scaledDifference:
+      scaled === undefined ? 'ordinary' : nodes.word(scaled, 'The scaled difference', ['ordinary', 'strictly positive'] as const)
   }
 }
 
@@ -133,8 +152,10 @@ function readAlpha(nodes: PlanNodes, spot: Spot): number {
 }
 
 function readChangeInFit(nodes: PlanNodes, spot: Spot): NonNullable<Rules['changeInFit']> {
-  const fields = nodes.fields(spot, 'The change in fit', ['cfi', 'rmsea', 'srmr'])
-  const threshold = (key: 'cfi' | 'rmsea' | 'srmr', sign: 1 | -1): number | null => {
+  const unset = { cfi: null, rmsea: null, srmr: null, mcdonald: null, gammaHat: null }
+  if (nodes.has(spot, 'scalar')) return { ...unset, preset: nodes.word(spot, 'The change in fit', presets) }
+  const fields = nodes.fields(spot, 'The change in fit', ['cfi', 'rmsea', 'srmr', 'mcdonald', 'gamma-hat'])
+  const threshold = (key: 'cfi' | 'rmsea' | 'srmr' | 'mcdonald' | 'gamma-hat', sign: 1 | -1): number | null => {
     const value = fields.get(key)
     if (value === undefined) return null
     const number = nodes.number(value, `The threshold of ${key}`)
@@ -145,5 +166,12 @@ function readChangeInFit(nodes: PlanNodes, spot: Spot): NonNullable<Rules['chang
     }
     return number
   }
-  return { cfi: threshold('cfi', -1), rmsea: threshold('rmsea', 1), srmr: threshold('srmr', 1) }
+  return {
+    preset: null,
+    cfi: threshold('cfi', -1),
+    rmsea: threshold('rmsea', 1),
+    srmr: threshold('srmr', 1),
+    mcdonald: threshold('mcdonald', -1),
+    gammaHat: threshold('gamma-hat', -1)
+  }
 }

@@ -3,7 +3,7 @@
  */
 import { Document, isCollection, isMap, isScalar, type Node, type YAMLMap } from 'yaml'
 import { InputError } from './input-error.ts'
-import type { Candidate, CellName, Change, ConstraintTerm, DataPlan, LadderPlan, Plan, Release } from './study.ts'
+import type { Candidate, CellName, Change, ConstraintTerm, DataPlan, LadderPlan, Plan, Release, Rules } from './study.ts'
 
 type Plain = string | number | Plain[] | { [key: string]: Plain } | Map<string, Plain>
 
@@ -37,13 +37,19 @@ function planFields(plan: Plan): [string, Plain][] {
       asMap([
         ['alpha', rules.alpha],
         ['adjust', rules.adjust],
-        ...given('change in fit', rules.changeInFit, (change) =>
-          asMap(Object.entries(change).filter((entry): entry is [string, number] => entry[1] !== null))
-        ),
-        ['decide by', rules.decideBy]
+        ...given('change in fit', rules.changeInFit, changeInFitValue),
+        ['decide by', rules.decideBy],
+        ['scaled difference', rules.scaledDifference]
       ])
     ]
   ]
+}
+
+/** A published rule by its name, or the thresholds given. */
+function changeInFitValue({ preset, gammaHat, ...thresholds }: NonNullable<Rules['changeInFit']>): Plain {
+  if (preset !== null) return preset
+  const entries = Object.entries({ ...thresholds, 'gamma-hat': gammaHat })
+  return asMap(entries.filter((entry): entry is [string, number] => entry[1] !== null))
 }
 
 function dataFields(data: DataPlan): [string, Plain][] {
@@ -124,7 +130,16 @@ function cellNames(cell: CellName): Plain {
 
 function ladderValue(ladder: LadderPlan): Plain {
   if ('rungs' in ladder) return ladder.rungs
-  return { 'invariance of': ladder.invarianceOf, across: ladder.across, through: ladder.through }
+  if ('over' in ladder) {
+    const over = new Map(ladder.over.map((occasion) => [occasion.name, occasion.indicators]))
+    return { 'invariance of': ladder.invarianceOf, over, through: ladder.through }
+  }
+  return asMap([
+    ['invariance of', ladder.invarianceOf],
+    ['across', ladder.across],
+    ['through', ladder.through],
+    ...given('and', ladder.and ?? null, (sets) => sets)
+  ])
 }
 
 /** One entry, or none where the value is null. */

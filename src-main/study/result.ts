@@ -33,6 +33,10 @@ export interface DifferenceResult {
   /** Holm over the tests of the ladder; null when the rules do not adjust. */
   holmP: number | null
   method: 'normal theory' | 'scaled' | 'strictly positive scaled' | 'boundary mixture'
+  /** Scaling factor of the difference (T is already divided by it); null for normal theory. */
+  scaling: number | null
+  /** Size of the step: RMSEA of the difference (Browne & Du Toit 1992) with its 90% interval. */
+  rmsea: { estimate: number | null; lower: number | null; upper: number | null }
   /** The value of T beyond which this step does not hold at the rules' alpha (after the adjustment that applied to it). */
   critical: number
 }
@@ -50,6 +54,8 @@ export interface StepResult {
   deltaCfi: number | null
   deltaRmsea: number | null
   deltaSrmr: number | null
+  deltaMcdonald: number | null
+  deltaGammaHat: number | null
   deltaAic: number | null
   deltaBic: number | null
   verdict: Verdict

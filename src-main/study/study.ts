@@ -115,10 +115,28 @@ export const invarianceLevels = ['configural', 'metric', 'scalar', 'strict'] as 
 export const invarianceLevelSchema = z.enum(invarianceLevels)
 export type InvarianceLevel = z.infer<typeof invarianceLevelSchema>
 
-/** An ordered chain of candidates, bottom (least restrictive) first: listed, or generated from one candidate. */
+/** What can be held equal on top of a level of invariance, each by itself: the structure rather than the measurement. */
+export const structuralSets = ['factor variances', 'factor covariances', 'factor means'] as const
+export type StructuralSet = (typeof structuralSets)[number]
+
+/** One occasion of measurement in wide data, and the indicators as they are called there. */
+const occasionSchema = z.strictObject({ name, indicators: z.array(name).min(1) })
+
+/**
+ * An ordered chain of candidates, bottom (least restrictive) first: listed, or generated from one candidate, across groups
+ * or over occasions (the candidate describes the first; all list the same indicators in the same order). What `and` names
+ * is added to the highest level, each by itself, as a ladder of two rungs of its own.
+ */
 export const ladderPlanSchema = z.union([
   z.strictObject({ name, rungs: z.array(name).min(1) }),
-  z.strictObject({ name, invarianceOf: name, across: name, through: invarianceLevelSchema })
+  z.strictObject({
+    name,
+    invarianceOf: name,
+    across: name,
+    through: invarianceLevelSchema,
+    and: z.array(z.enum(structuralSets)).min(1).optional()
+  }),
+  z.strictObject({ name, invarianceOf: name, over: z.array(occasionSchema).min(2), through: invarianceLevelSchema })
 ])
 export type LadderPlan = z.infer<typeof ladderPlanSchema>
 
@@ -132,22 +150,34 @@ export const estimationSchema = z.strictObject({
 })
 export type Estimation = z.infer<typeof estimationSchema>
 
+/** Published rules of thumb that can be named in place of thresholds (rule-presets.ts). */
+export const presets = ['Cheung & Rensvold 2002', 'Chen 2007', 'Meade, Johnson & Braddy 2008'] as const
+const presetSchema = z.enum(presets)
+
 /** The criteria fixed before fitting. A change in fit holds while no given threshold is crossed (methods: section 7). */
 export const rulesSchema = z.strictObject({
   alpha: z.number().gt(0).lt(1).default(0.05),
   adjust: z.enum(['holm', 'none']).default('holm'),
   changeInFit: z
     .strictObject({
+      /** A published rule by its citation; its thresholds then count, and those below are null. */
+      preset: presetSchema.nullable().default(null),
       /** Lowest Delta CFI that still holds, e.g. -0.01. */
       cfi: z.number().max(0).nullable().default(null),
       /** Highest Delta RMSEA that still holds, e.g. 0.015. */
       rmsea: z.number().min(0).nullable().default(null),
       /** Highest Delta SRMR that still holds. */
-      srmr: z.number().min(0).nullable().default(null)
+      srmr: z.number().min(0).nullable().default(null),
+      /** Lowest Delta of McDonald's centrality that still holds. */
+      mcdonald: z.number().max(0).nullable().default(null),
+      /** Lowest Delta gamma-hat that still holds. */
+      gammaHat: z.number().max(0).nullable().default(null)
     })
     .nullable()
     .default(null),
-  decideBy: z.enum(['difference test', 'change in fit', 'both']).default('difference test')
+  decideBy: z.enum(['difference test', 'change in fit', 'both']).default('difference test'),
+  /** Of scaled statistics: Satorra & Bentler 2001 where it is defined, or always the strictly positive form of 2010. */
+  scaledDifference: z.enum(['ordinary', 'strictly positive']).default('ordinary')
 })
 export type Rules = z.infer<typeof rulesSchema>
 

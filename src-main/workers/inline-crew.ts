@@ -1,7 +1,9 @@
 /**
  * A crew of one: does each job on the calling thread. For tests and for reading; a window would freeze under it.
  */
+
 import { relationOf } from '../statistics/comparison/relation.ts'
+import { scalingAtRestricted } from '../statistics/comparison/scaled-difference.ts'
 import { scoreTests } from '../statistics/estimation/score-tests.ts'
 import { fitModel } from '../statistics/fit/fit.ts'
 import type { Crew, Job, Outcome } from './jobs.ts'
@@ -9,6 +11,7 @@ import type { Crew, Job, Outcome } from './jobs.ts'
 export const inlineCrew: Crew = {
   fit: done,
   relation: done,
+  restrictedScaling: done,
   scoreTests: done,
   async close() {}
 }
@@ -25,6 +28,8 @@ export function doJob(job: Job): Outcome {
       return fitModel(job.cells, job.moments, job.settings, job.rows)
     case 'relation':
       return relationOf(job)
+    case 'restricted scaling':
+      return scalingAtRestricted(job)
     case 'score tests':
       return scoreTests(job.cells, job.moments, job.settings.convention, job.gamma)
   }

@@ -1,7 +1,9 @@
 /**
  * What a fit worker is asked and what it answers: plain, structured-clonable values. No statistics here.
  */
+
 import type { RelationInput, RelationOutcome } from '../statistics/comparison/relation.ts'
+import type { ScalingAtRestrictedInput } from '../statistics/comparison/scaled-difference.ts'
 import type { ScoreTests } from '../statistics/estimation/score-tests.ts'
 import type { FitOutcome } from '../statistics/fit/fit-result.ts'
 import type { FitSettings } from '../statistics/fit/settings.ts'
@@ -32,13 +34,19 @@ export interface ScoreJob {
   gamma: number[]
 }
 
-export type Job = FitJob | RelationJob | ScoreJob
-export type Outcome = FitOutcome | RelationOutcome | ScoreTests
+/** The scaling of the lower rung at the upper rung's estimates, for the strictly positive difference; null when there is none. */
+export interface RestrictedScalingJob extends ScalingAtRestrictedInput {
+  kind: 'restricted scaling'
+}
+
+export type Job = RestrictedScalingJob | FitJob | RelationJob | ScoreJob
+export type Outcome = number | null | FitOutcome | RelationOutcome | ScoreTests
 
 /** Runs jobs, off the calling thread where it can. A job rejects only on a bug or when `signal` aborts. */
 export interface Crew {
   fit(job: FitJob, signal?: AbortSignal): Promise<FitOutcome>
   relation(job: RelationJob, signal?: AbortSignal): Promise<RelationOutcome>
+  restrictedScaling(job: RestrictedScalingJob, signal?: AbortSignal): Promise<number | null>
   scoreTests(job: ScoreJob, signal?: AbortSignal): Promise<ScoreTests>
   close(): Promise<void>
 }

@@ -14,6 +14,7 @@ import { collecting, rungwise, temporaryFolder } from './program.ts'
 const unwilling: Crew = {
   fit: () => Promise.reject(new Error('asked to fit bad input')),
   relation: () => Promise.reject(new Error('asked to compare bad input')),
+  restrictedScaling: () => Promise.reject(new Error('asked to scale bad input')),
   scoreTests: () => Promise.reject(new Error('asked to test bad input')),
   close: async () => {}
 }

@@ -155,6 +155,7 @@ function endlessCrew(onFirst: () => void): Crew {
   return {
     fit: (_job, signal) => wait(signal),
     relation: (_job, signal) => wait(signal),
+    restrictedScaling: (_job, signal) => wait(signal),
     scoreTests: (_job, signal) => wait(signal),
     close: async () => {}
   }

@@ -51,7 +51,16 @@ export function handMadeResult(): StudyResult {
           step('Same pattern', 'Loadings equal', { adds: 'loadings equal across decks' }),
           step('Loadings equal', 'Intercepts equal', {
             adds: 'intercepts equal across decks',
-            difference: { T: 51.73, df: 12, p: 7e-7, holmP: 1.4e-6, method: 'normal theory', critical: 23.34 },
+            difference: {
+              T: 51.73,
+              df: 12,
+              p: 7e-7,
+              holmP: 1.4e-6,
+              method: 'normal theory',
+              scaling: null,
+              rmsea: { estimate: 0.02, lower: 0, upper: 0.05 },
+              critical: 23.34
+            },
             deltaCfi: -0.0222,
             verdict: 'does not hold',
             because: 'Delta T 51.73 on 12 df exceeds 23.34 (Holm p < .001, alpha .05).'
@@ -112,10 +121,21 @@ function step(from: string, to: string, own: Partial<StepResult>): StepResult {
     adds: '',
     relation: 'nested',
     proof: 'constraints',
-    difference: { T: 11.83, df: 12, p: 0.46, holmP: 0.46, method: 'normal theory', critical: 21.03 },
+    difference: {
+      T: 11.83,
+      df: 12,
+      p: 0.46,
+      holmP: 0.46,
+      method: 'normal theory',
+      scaling: null,
+      rmsea: { estimate: 0.02, lower: 0, upper: 0.05 },
+      critical: 21.03
+    },
     deltaCfi: 0.0003,
     deltaRmsea: -0.001,
     deltaSrmr: 0.002,
+    deltaMcdonald: null,
+    deltaGammaHat: null,
     deltaAic: -12.17,
     deltaBic: -60.1,
     verdict: 'holds',

@@ -1,6 +1,10 @@
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
-import { criticalValue, holm, informationWeights, normalDifference } from './difference-test.ts'
+import { chiSquareQuantile } from '../distributions/chi-square.ts'
+import { criticalLevel, type DifferenceTest, holm, informationWeights, normalDifference } from './difference-test.ts'
+
+const criticalValue = (test: DifferenceTest, adjustedP: number, alpha: number) =>
+  chiSquareQuantile(criticalLevel(test.p, adjustedP, alpha), test.df)
 
 describe('the chi-square difference', () => {
   it('is the published step from two factors to parallel pairs: 1.93 - 0.70 on 4 df (Jöreskog 1971, typed from memory)', () => {

@@ -1,7 +1,7 @@
 /**
  * The test of one step, and what goes with a family of them (methods: section 6).
  */
-import { chiSquareQuantile, chiSquareUpper } from '../distributions/chi-square.ts'
+import { chiSquareUpper } from '../distributions/chi-square.ts'
 
 export interface DifferenceTest {
   T: number
@@ -30,12 +30,11 @@ export function holm(pValues: readonly number[]): number[] {
 }
 
 /**
- * The value of the statistic at which this very step would stop holding: the chi-square quantile at the level that the
- * adjustment left to it, alpha p / adjusted p. Thus the statistic exceeds it exactly when the adjusted p is below alpha.
+ * The level that the adjustment left to one test, alpha p / adjusted p: at the quantile of this level the statistic would
+ * stop holding, for it exceeds that quantile exactly when the adjusted p is below alpha.
  */
-export function criticalValue(test: DifferenceTest, adjustedP: number, alpha: number): number {
-  const share = adjustedP > 0 ? test.p / adjustedP : 1
-  return chiSquareQuantile(alpha * share, test.df)
+export function criticalLevel(p: number, adjustedP: number, alpha: number): number {
+  return alpha * (adjustedP > 0 && p > 0 ? p / adjustedP : 1)
 }
 
 /**

@@ -9,12 +9,13 @@
  */
 import { chiSquareUpper } from '../distributions/chi-square.ts'
 import { normalObjective } from '../estimation/normal-likelihood.ts'
-import type { CaseGroup } from '../estimation/robust-scores.ts'
 import { scalingFactor } from '../estimation/scaling.ts'
+import { missingScalingFactor } from '../estimation/scaling-missing.ts'
 import { minimise } from '../estimation/scoring.ts'
 import { startingValues } from '../estimation/starts.ts'
-import type { CompiledModel } from '../model/compile.ts'
-import type { GroupState } from '../model/implied-moments.ts'
+import type { ModelCells } from '../model/cells.ts'
+import { type CompiledModel, compileModel } from '../model/compile.ts'
+import { groupState, impliedMoments } from '../model/implied-moments.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
 import type { DifferenceTest } from './difference-test.ts'
 
@@ -69,38 +70,59 @@ function difference(
 /** A discrepancy below this is a perfect fit. */
 const perfectFit = 1e-8
 
+export interface ScalingAtRestrictedInput {
+  general: ModelCells
+  /** The general model's own solution, tried before its ordinary starting values. */
+  generalGamma: number[]
+  restricted: ModelCells
+  restrictedGamma: number[]
+  /** What both were fitted to. */
+  moments: SampleMoments
+  /** Per group n x p row-major, NaN where missing. */
+  rows: Float64Array[]
+}
+
 /**
  * c10: the scaling factor of the general model at the point where it implies the restricted model's moments. The point is
  * found by fitting the general model to those moments, so that identification may shift between the two (factor means
  * freed where intercepts become equal): c depends on the moments and on the directions free there, not on the parameters.
  *
- * @param start the general model's own solution, tried before its ordinary starting values
- * @param restrictedStates the restricted model's matrices at its solution, per group
- * @param groups the cases both were fitted to
  * @returns null when the general model does not reproduce those moments (not nested), is singular there, or has no df
  */
-export function scalingAtRestricted(
-  general: CompiledModel,
-  start: Float64Array,
-  restrictedStates: readonly GroupState[],
-  groups: readonly CaseGroup[]
-): number | null {
+export function scalingAtRestricted(input: ScalingAtRestrictedInput): number | null {
+  const general = compileModel(input.general)
   if (general.df === 0) return null
+  const gamma = reproducing(general, input)
+  if (gamma === null) return null
+  const { moments, rows } = input
+  const objective = normalObjective(general, moments, 'normal')
+  objective.evaluate(gamma)
+  if (moments.groups.some((g) => (g.patterns?.length ?? 0) > 1)) return missingScalingFactor(general, objective, moments, rows)
+  const q = general.parameters
+  const curvature = new Float64Array(q * q)
+  objective.derive(new Float64Array(q), curvature)
+  const groups = rows.map((values) => ({ rows: values, size: values.length / general.indicators.length }))
+  return scalingFactor({ model: general, states: objective.states, groups, curvature })?.scaling ?? null
+}
+
+/** The general model's gamma that implies the restricted model's moments; null when there is none. */
+function reproducing(
+  general: CompiledModel,
+  { restricted, restrictedGamma, moments, generalGamma }: ScalingAtRestrictedInput
+): Float64Array | null {
+  const model = compileModel(restricted)
   const implied: SampleMoments = {
     indicators: general.indicators,
-    groups: restrictedStates.map(({ sigma, mu }, g) => ({
-      name: general.groups[g]!.name,
-      n: groups[g]!.size,
-      covariance: sigma,
-      mean: general.meanStructure ? mu : null
-    }))
+    groups: model.groups.map((group, g) => {
+      const state = groupState(model.indicators.length, model.factors.length)
+      impliedMoments(group, Float64Array.from(restrictedGamma), model.hasRegressions, state)
+      return { name: group.name, n: moments.groups[g]!.n, covariance: state.sigma, mean: general.meanStructure ? state.mu : null }
+    })
   }
   const objective = normalObjective(general, implied, 'normal')
-  for (const from of [start, startingValues(general, implied)]) {
-    const { gamma, value, curvature } = minimise(objective, from)
-    if (!(value < perfectFit)) continue
-    objective.evaluate(gamma)
-    return scalingFactor({ model: general, states: objective.states, groups, curvature })?.scaling ?? null
+  for (const from of [Float64Array.from(generalGamma), startingValues(general, implied)]) {
+    const { gamma, value } = minimise(objective, from)
+    if (value < perfectFit) return gamma
   }
   return null
 }

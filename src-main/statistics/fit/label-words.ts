@@ -1,7 +1,7 @@
 /** A parameter in words: the first cell that has its label. */
 import { cellWords } from '../model/cell-words.ts'
 import type { CellPart } from '../model/cells.ts'
-import type { CompiledModel, MatrixName } from '../model/compile.ts'
+import type { CompiledModel, FreeCell, MatrixName } from '../model/compile.ts'
 
 const partOf: Record<MatrixName, [off: CellPart, diagonal: CellPart]> = {
   lambda: ['loading', 'loading'],
@@ -16,11 +16,16 @@ export function labelWords(model: CompiledModel, label: string): string {
   for (const group of model.groups) {
     const cell = group.free.find((c) => c.label === label)
     if (cell === undefined) continue
-    const { matrix, row, column } = cell
-    const rows = matrix === 'lambda' || matrix === 'theta' || matrix === 'nu' ? model.indicators : model.factors
-    const columns = matrix === 'theta' ? model.indicators : model.factors
-    const single = matrix === 'nu' || matrix === 'alpha' || (row === column && (matrix === 'psi' || matrix === 'theta'))
-    return cellWords(partOf[matrix][row === column ? 1 : 0], single ? [rows[row]!] : [rows[row]!, columns[column]!], group.name)
+    const { part, of } = partOfCell(model, cell)
+    return cellWords(part, of, group.name)
   }
   return label
+}
+
+/** What a free cell is called in plans and estimates. */
+export function partOfCell(model: CompiledModel, { matrix, row, column }: FreeCell): { part: CellPart; of: string[] } {
+  const rows = matrix === 'lambda' || matrix === 'theta' || matrix === 'nu' ? model.indicators : model.factors
+  const columns = matrix === 'theta' ? model.indicators : model.factors
+  const single = matrix === 'nu' || matrix === 'alpha' || (row === column && (matrix === 'psi' || matrix === 'theta'))
+  return { part: partOf[matrix][row === column ? 1 : 0], of: single ? [rows[row]!] : [rows[row]!, columns[column]!] }
 }

@@ -267,10 +267,18 @@ function step(
     adds,
     relation: 'nested',
     proof: 'constraints',
-    difference: { ...difference, holmP: Math.min(1, difference.p * 2), method: 'normal theory' },
+    difference: {
+      ...difference,
+      holmP: Math.min(1, difference.p * 2),
+      method: 'normal theory',
+      scaling: null,
+      rmsea: { estimate: 0.02, lower: 0, upper: 0.05 }
+    },
     deltaCfi: deltas[0],
     deltaRmsea: deltas[1],
     deltaSrmr: 0.008,
+    deltaMcdonald: null,
+    deltaGammaHat: null,
     deltaAic: -12.2,
     deltaBic: -70,
     verdict: holds ? 'holds' : 'does not hold',
@@ -388,7 +396,7 @@ export function harbourStudy(): StudyView {
       missing: 'complete cases',
       standardErrors: 'expected'
     },
-    rules: { alpha: 0.05, adjust: 'holm', changeInFit: null, decideBy: 'difference test' },
+    rules: { alpha: 0.05, adjust: 'holm', changeInFit: null, decideBy: 'difference test', scaledDifference: 'ordinary' },
     data: { source: 'harbour.csv', indicators, grouping: 'clinic', groups, missing: 14, cautions: [] },
     candidates,
     ladders: [

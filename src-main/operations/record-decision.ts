@@ -3,14 +3,14 @@
  */
 
 import { InputError } from '../study/input-error.ts'
-import { ladderRungs } from '../study/ladders.ts'
+import { ladderRungs, standingLadders } from '../study/ladders.ts'
 import type { Bench } from './bench.ts'
 import type { Operations, StudyView } from './contract.ts'
 
 export async function recordDecision(bench: Bench, decision: Operations['recordDecision']['input']): Promise<StudyView> {
   const project = bench.requireProject()
   const plan = project.plan()
-  const ladder = plan.ladders.find(({ name }) => name === decision.ladder)
+  const ladder = standingLadders(plan.ladders).find(({ name }) => name === decision.ladder)
   if (ladder === undefined) throw new InputError(`There is no ladder "${decision.ladder}".`, { where: 'ladder' })
   const rungs = ladderRungs(ladder, plan.candidates)
   if (!rungs.includes(decision.rung)) {

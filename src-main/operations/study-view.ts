@@ -3,6 +3,7 @@
  */
 import type { Project } from '../project/project.ts'
 import { compileModel } from '../statistics/model/compile.ts'
+import { standingLadders } from '../study/ladders.ts'
 import type { CandidateResult } from '../study/result.ts'
 import { candidateSentence } from '../study/sentences.ts'
 import type { Candidate, DataSet, Plan } from '../study/study.ts'
@@ -33,7 +34,7 @@ export async function studyView(project: Project, crew: Crew, version: string): 
       cautions: result.data.cautions
     },
     candidates: family.candidates.map((candidate) => candidateView(candidate, fitted.get(candidate.name), family, plan, data)),
-    ladders: plan.ladders,
+    ladders: standingLadders(plan.ladders),
     result,
     decisions: project.decisions(),
     trail: { entries: project.trail().map(({ detail: _detail, ...entry }) => entry), intact: project.trailBreak === null }

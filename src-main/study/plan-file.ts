@@ -81,10 +81,13 @@ function readLadders(nodes: PlanNodes, spot: Spot): LadderPlan[] {
         'Write it like [bottom, middle, top].'
       )
     }
+    if (nodes.mapping(value, `The ladder "${key}"`).some((entry) => entry.key === 'over')) {
+      return readRepeated(nodes, value, key, `ladders.${i}`)
+    }
     const fields = nodes.fields(
       value,
       `The ladder "${key}"`,
-      ['invariance of', 'across', 'through', 'and'],
+      ['invariance of', 'across', 'over', 'through', 'and'],
       ['invariance of', 'across', 'through']
     )
     const and = fields.get('and')
@@ -99,6 +102,41 @@ function readLadders(nodes: PlanNodes, spot: Spot): LadderPlan[] {
       ...(and === undefined ? {} : { and: readStructural(nodes, and, key, `ladders.${i}.and`) })
     }
   })
+}
+
+/** A ladder over the occasions of repeated measurements. */
+function readRepeated(nodes: PlanNodes, spot: Spot, name: string, path: string): LadderPlan {
+  const what = `The ladder "${name}"`
+  const fields = nodes.fields(spot, what, ['invariance of', 'over', 'across', 'through'], ['invariance of', 'over', 'through'])
+  const across = fields.get('across')
+  if (across !== undefined) nodes.fail(across, `${what} goes across groups or over occasions, not both.`, 'Write two ladders.')
+  for (const [key, value] of fields) nodes.mark(`${path}.${key}`, value)
+  const occasions = nodes.mapping(fields.get('over')!, 'The occasions')
+  if (occasions.length < 2) {
+    nodes.fail(
+      fields.get('over')!,
+      `${what} needs two occasions or more.`,
+      'Write them like { first: [a1, b1], second: [a2, b2] }.'
+    )
+  }
+  return {
+    name,
+    invarianceOf: nodes.name(fields.get('invariance of')!, 'The candidate'),
+    over: occasions.map(({ key, keySpot, value }, t) => {
+      nodes.mark(`${path}.over.${t}`, keySpot)
+      return { name: key, indicators: readOccasion(nodes, value, key, `${path}.over.${t}`) }
+    }),
+    through: nodes.word(fields.get('through')!, 'The highest step', invarianceLevels)
+  }
+}
+
+function readOccasion(nodes: PlanNodes, spot: Spot, occasion: string, path: string): string[] {
+  const items = nodes.list(spot, `What was measured at "${occasion}"`, '[sleep, pain]')
+  if (items.length === 0) nodes.fail(spot, `No indicator is listed at "${occasion}".`, 'List the same ones at every occasion.')
+  items.forEach((item, i) => {
+    nodes.mark(`${path}.${i}`, item)
+  })
+  return items.map((item) => nodes.name(item, `An indicator at "${occasion}"`))
 }
 
 /** What is held equal on top of the highest level, each by itself. */

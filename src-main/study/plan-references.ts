@@ -5,10 +5,11 @@
  * a path in the plan ("candidates.0.from") into the place to name in a message.
  */
 import { InputError } from './input-error.ts'
-import { ladderCandidates } from './ladders.ts'
+import { ladderCandidates, standingLadders } from './ladders.ts'
 import { didYouMean } from './nearest.ts'
 import { checkCandidate } from './plan-candidate-checks.ts'
 import { acrossOf, checkGrouping, type Fail, hasMeans, lineageOf } from './plan-context.ts'
+import { checkOccasions } from './repeated.ts'
 import type { Candidate, DataSet, Estimation, LadderPlan, Plan } from './study.ts'
 
 export type PlaceOf = (path: string) => string | null
@@ -30,8 +31,9 @@ export function checkPlan(plan: Plan, placeOf: PlaceOf = () => null): void {
     checkCandidate(plan, byName, candidate, (path, what, remedy) => fail(`candidates.${i}${path}`, what, remedy))
   })
   plan.ladders.forEach((ladder, i) => {
-    if (plan.ladders.findIndex((other) => other.name === ladder.name) < i)
-      fail(`ladders.${i}`, `The ladder "${ladder.name}" stands twice.`, 'Rename one.')
+    const before = standingLadders(plan.ladders.slice(0, i)).map((other) => other.name)
+    const twice = standingLadders([ladder]).find((one) => before.includes(one.name))
+    if (twice !== undefined) fail(`ladders.${i}`, `The ladder "${twice.name}" stands twice.`, 'Rename one.')
     checkLadder(plan, ladder, (path, what, remedy) => fail(`ladders.${i}${path}`, what, remedy))
   })
   checkRules(plan, fail)
@@ -63,8 +65,7 @@ export function checkPlanAgainstData(
     }
   }
   for (const ladder of plan.ladders) {
-    if ('invarianceOf' in ladder && groups.length < 2)
-      throw new InputError(oneGroup(data.grouping), { where: `ladder "${ladder.name}"` })
+    if ('across' in ladder && groups.length < 2) throw new InputError(oneGroup(data.grouping), { where: `ladder "${ladder.name}"` })
   }
 }
 
@@ -119,7 +120,8 @@ function checkLadder(plan: Plan, ladder: LadderPlan, fail: Fail): void {
     return
   }
   unknown(ladder.invarianceOf, '.invariance of', written)
-  checkGrouping(plan, ladder.across, (what, remedy) => fail('.across', what, remedy))
+  if ('over' in ladder) checkOccasions(plan, ladder, fail)
+  else checkGrouping(plan, ladder.across, (what, remedy) => fail('.across', what, remedy))
   if (!hasMeans(plan) && (ladder.through === 'scalar' || ladder.through === 'strict')) {
     fail(
       '.through',
@@ -127,6 +129,22 @@ function checkLadder(plan: Plan, ladder: LadderPlan, fail: Fail): void {
       'Write "through: metric", or give means.'
     )
   }
+  if ('across' in ladder) checkStructural(ladder, fail)
+}
+
+/** Factors' variances and covariances can be compared where loadings are equal, their means where intercepts are too. */
+function checkStructural({ name, through, and }: Extract<LadderPlan, { across: string }>, fail: Fail): void {
+  and?.forEach((set, k) => {
+    if (and.indexOf(set) < k) fail(`.and.${k}`, `"${set}" stands twice on the ladder "${name}".`, 'Remove one.')
+    const means = set === 'factor means'
+    if (through === 'configural' || (means && through === 'metric')) {
+      fail(
+        `.and.${k}`,
+        `Equal ${set} mean something only where ${means ? 'intercepts' : 'loadings'} are equal.`,
+        `Write "through: ${means ? 'scalar' : 'metric'}" or higher, or remove "${set}".`
+      )
+    }
+  })
 }
 
 /** What the invariance ladders of the plan bring with them: a listed ladder may stand on it, with a partial step in between, say. */

@@ -20,6 +20,43 @@ export function changeWords(change: Change): string {
   }
 }
 
+/** Neighbouring changes of one kind are gathered from this many on. */
+const gathered = 3
+
+/** Changes as clauses, in order; a run of the same kind as one: "equal loadings (a on F and b on G; c on F and d on G; ...)". */
+export function changesWords(changes: readonly Change[]): string[] {
+  const clauses: string[] = []
+  for (let start = 0, end = 0; start < changes.length; start = end) {
+    const kind = kindOf(changes[start]!)
+    end = start + 1
+    while (kind !== null && end < changes.length && kindOf(changes[end]!) === kind) end++
+    const run = changes.slice(start, end)
+    clauses.push(...(run.length < gathered ? run.map(changeWords) : [`${kind} (${run.map(shortCells).join('; ')})`]))
+  }
+  return clauses
+}
+
+/** "equal loadings", "free factor means"; null for what is always said by itself. */
+function kindOf(change: Change): string | null {
+  if ((change.do !== 'equal' && change.do !== 'free') || change.group !== null) return null
+  const parts = new Set(change.do === 'equal' ? change.cells.map((cell) => cell.part) : [change.cell.part])
+  return parts.size > 1 ? null : `${change.do} ${plural([...parts][0]!)}`
+}
+
+function shortCells(change: Change): string {
+  const cells = change.do === 'equal' ? change.cells : change.do === 'free' ? [change.cell] : []
+  return listed(cells.map(shortCell), cells.length)
+}
+
+/** The names alone: what they are names of is said once for the whole run. */
+function shortCell({ part, of }: CellName): string {
+  return of.join(part.endsWith('covariance') ? ' with ' : ' on ')
+}
+
+function plural(part: CellName['part']): string {
+  return part.replace(/variance$/, 'variances').replace(/(loading|intercept|mean|regression)$/, '$1s')
+}
+
 /** "at least 0", "between -1 and 1" */
 export function limitWords(atLeast: number | null, atMost: number | null): string {
   if (atLeast !== null && atMost !== null) return `between ${atLeast} and ${atMost}`
@@ -63,6 +100,5 @@ function cellsWords(cells: readonly CellName[]): string {
     return listed(words, words.length)
   }
   const names = cells.map((cell) => cell.of[0]!)
-  const many = first.part.replace(/variance$/, 'variances').replace(/(loading|intercept|mean|regression)$/, '$1s')
-  return `the ${many} of ${listed(names, names.length)}${first.of[1] === undefined ? '' : ` on ${first.of[1]}`}`
+  return `the ${plural(first.part)} of ${listed(names, names.length)}${first.of[1] === undefined ? '' : ` on ${first.of[1]}`}`
 }

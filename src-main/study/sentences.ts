@@ -3,7 +3,7 @@
  */
 import { cellWords, listed } from '../statistics/model/cell-words.ts'
 import { type ResolvedCandidate, resolveCandidate } from './candidate-model.ts'
-import { changeWords } from './change-words.ts'
+import { changesWords, changeWords } from './change-words.ts'
 import type { Candidate, Change, EqualSet, Factor, Release } from './study.ts'
 
 /** What a candidate is, in one sentence: its factors, or what differs from its parent. */
@@ -46,7 +46,7 @@ function ownParts(candidate: Candidate): string[] {
     parts.push(acrossWords(candidate.across, candidate.equalAcrossGroups ?? []))
   }
   if (candidate.except.length > 0) parts.push(`except ${listed(candidate.except.map(releaseWords), candidate.except.length)}`)
-  return [...parts, ...candidate.change.map(changeWords)]
+  return [...parts, ...changesWords(candidate.change)]
 }
 
 function acrossWords(across: string | null, equal: readonly EqualSet[]): string {
@@ -107,7 +107,7 @@ function changedWords(lower: readonly Change[], upper: readonly Change[]): strin
     if (change.do === 'constrain') return `no longer: ${changeWords(change)}`
     return changeWords(change).replace(/ are equal/, ' are no longer equal')
   })
-  return [...undone, ...notIn(upper, lower).map(changeWords)]
+  return [...undone, ...changesWords(notIn(upper, lower))]
 }
 
 function factorWords(from: ResolvedCandidate, to: ResolvedCandidate): string {

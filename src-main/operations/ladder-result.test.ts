@@ -37,6 +37,7 @@ function side(name: string, T: number, df: number, more: Partial<CandidateResult
     srmr: 0.02 + T / 5000,
     srmrWithMeans: null,
     plugIn: null,
+    bounds: [],
     standardErrors: 'expected',
     estimates: [],
     residuals: null,
@@ -170,7 +171,9 @@ it('differences are the upper value less the lower', () => {
 })
 
 describe('the test that is valid for the very pair', () => {
-  const scaled = (T: number, scaling: number) => ({ scaled: { T: T / scaling, p: 0.5, scaling, form: 'Satorra & Bentler 1994' } })
+  const scaled = (T: number, scaling: number) => ({
+    scaled: { T: T / scaling, p: 0.5, scaling, form: 'Satorra & Bentler 1994', scalingAtUnrestricted: null }
+  })
 
   it('is the scaled difference where both statistics are scaled: c_d = (22 x 1.2 - 20 x 1.1) / 2 = 2.2 by hand', () => {
     const lower = side('a', 20, 20, scaled(20, 1.1))

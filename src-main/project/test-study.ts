@@ -94,6 +94,7 @@ export function smallOutcome(changes: Partial<FitOutcome['fit']> = {}): FitOutco
     srmr: none,
     srmrWithMeans: none,
     plugIn: null,
+    bounds: [],
     standardErrors: 'expected',
     estimates: [],
     residuals: none,

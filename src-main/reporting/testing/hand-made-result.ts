@@ -105,6 +105,7 @@ function candidate(name: string, own: Partial<CandidateResult>): CandidateResult
     srmr: 0.031,
     srmrWithMeans: 0.032,
     plugIn: null,
+    bounds: [],
     standardErrors: 'expected',
     estimates: [],
     residuals: null,

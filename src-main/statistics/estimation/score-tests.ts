@@ -10,6 +10,7 @@
 import { chiSquareUpper } from '../distributions/chi-square.ts'
 import type { CellPart, ModelCells } from '../model/cells.ts'
 import { type CompiledModel, compileModel } from '../model/compile.ts'
+import { holdAtBounds } from '../model/hold.ts'
 import type { GroupState } from '../model/implied-moments.ts'
 import { standardisation } from '../model/standardisation.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
@@ -71,7 +72,7 @@ export interface ScoreTests {
 
 /**
  * @param cells the fitted model
- * @param gamma its solution in the compiled model's order, at which the gradient of F is zero
+ * @param gamma its solution in the compiled model's order, at which the gradient of F is zero but for those on a bound: they are taken as fixed
  * @param makeObjective F of a compiled model on the same data; left out: normal theory, complete data
  */
 export function scoreTests(
@@ -81,9 +82,10 @@ export function scoreTests(
   gamma: readonly number[],
   makeObjective: MakeObjective = (model) => normalObjective(model, moments, convention)
 ): ScoreTests {
-  const model = compileModel(cells)
-  const releases = possibleReleases(model, cells.constraints)
-  const solution = Float64Array.from(gamma)
+  const held = holdAtBounds(cells, gamma)
+  const model = compileModel(held.cells)
+  const releases = possibleReleases(model, held.cells.constraints)
+  const solution = Float64Array.from(held.gamma)
   const scores = releaseScores(model, releases, solution, makeObjective)
   if (scores === null) return { tests: [], untested: [], unavailable: 'The information is singular at the solution.' }
   const fitted = makeObjective(model)
@@ -116,9 +118,10 @@ export function jointEqualityTest(
   part: CellPart | null = null,
   makeObjective: MakeObjective = (model) => normalObjective(model, moments, convention)
 ): { statistic: number; df: number; p: number } | null {
-  const model = compileModel(cells)
+  const held = holdAtBounds(cells, gamma)
+  const model = compileModel(held.cells)
   const releases = possibleReleases(model, []).filter((r) => r.kind === 'equality' && (part === null || r.part === part))
-  const joint = jointReleaseScore(model, releases, Float64Array.from(gamma), makeObjective)
+  const joint = jointReleaseScore(model, releases, Float64Array.from(held.gamma), makeObjective)
   if (joint === null || joint.rank === 0) return null
   const statistic = (makeObjective(model).total / 2) * joint.value
   return { statistic, df: joint.rank, p: chiSquareUpper(statistic, joint.rank) }

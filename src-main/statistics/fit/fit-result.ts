@@ -41,6 +41,28 @@ export interface EstimateResult {
   standardizedError: number | null
 }
 
+/** A bounded cell: its limits (null where open), and on which of them the estimate lies. */
+export interface BoundResult {
+  part: CellPart
+  group: string | null
+  of: string[]
+  atLeast: number | null
+  atMost: number | null
+  /** null where the estimate lies within. */
+  active: 'at least' | 'at most' | null
+}
+
+export interface ScaledResult {
+  /** T / c */
+  T: number
+  p: number
+  /** c */
+  scaling: number
+  form: string
+  /** With missing answers: c by the form that is defined for every model, so that any two can be compared; else null. */
+  scalingAtUnrestricted: number | null
+}
+
 /** One start of the search for the smallest minimum. */
 export interface StartRecord {
   start: 'ordinary' | 'perturbed'
@@ -59,7 +81,7 @@ export interface FitResult {
   df: number
   p: number | null
   /** The mean-scaled statistic, where the plan asks for it; `form` names the source of the scaling factor. */
-  scaled: { T: number; p: number; scaling: number; form: string } | null
+  scaled: ScaledResult | null
   /** Free parameters, counted as in AIC and BIC (saturated means included where means are modelled). */
   parameters: number
   /** N of every formula: sum n_g, or sum (n_g - 1) under the Wishart convention. */
@@ -91,6 +113,8 @@ export interface FitResult {
   estimates: EstimateResult[]
   /** Per group, observed minus implied over sqrt(s_ii s_jj), lower triangle by rows; null when there is no solution. */
   residuals: { group: string | null; lower: number[][] }[] | null
+  /** Every cell that the candidate bounds; empty when there is no solution. df counts a cell on its bound as free. */
+  bounds: BoundResult[]
   cautions: Caution[]
   convergence: {
     iterations: number

@@ -6,6 +6,7 @@
  * A fit that fails is a value with its reason, never an exception.
  */
 import { seededGenerator } from '../distributions/generator.ts'
+import { heldAtBounds, submatrix } from '../estimation/bounded.ts'
 import { nullSpaceParameters, unidentifiedLabels } from '../estimation/identification.ts'
 import { normalObjective } from '../estimation/normal-likelihood.ts'
 import { type Minimum, ordinaryScoring } from '../estimation/scoring.ts'
@@ -45,9 +46,7 @@ export function fitModel(
     tried
   }
 
-  const unknown = Number.isNaN(best.value)
-    ? []
-    : nullSpaceParameters(best.curvature, model.parameters).map((k) => model.gammaLabels[k]!)
+  const unknown = Number.isNaN(best.value) ? [] : undetermined(model, best)
   if (unknown.length > 0 || best.stop !== 'converged') {
     const generic = unidentifiedLabels(model, moments, seededGenerator(startSeed))
     const labels = generic.length > 0 ? generic : unknown
@@ -64,6 +63,14 @@ const stopReasons: Record<Minimum['stop'], string> = {
   'iteration limit': `No minimum was reached within ${ordinaryScoring.iterations} iterations from any start.`,
   'no descent': 'The search stopped where no step leads down, without meeting the convergence criterion.',
   'bad start': 'No start gave a positive definite covariance matrix.'
+}
+
+/** Labels of the parameters that the information leaves open at the solution; one held at its bound is settled by that. */
+function undetermined(model: CompiledModel, { gamma, curvature }: Minimum): string[] {
+  const held = heldAtBounds(model.bounds, gamma)
+  const free = Array.from(gamma.keys()).filter((k) => !held.includes(k))
+  const information = held.length === 0 ? curvature : submatrix(curvature, gamma.length, free)
+  return nullSpaceParameters(information, free.length).map((k) => model.gammaLabels[free[k]!]!)
 }
 
 function notIdentifiedReason(model: CompiledModel, labels: string[], always: boolean): string {

@@ -1,10 +1,12 @@
 /**
  * What a fit yields, failed or not: the same fields, filled as far as they apply.
  */
+import { heldAtBounds } from '../estimation/bounded.ts'
 import { type Convention, effectiveSize, type Objective } from '../estimation/normal-likelihood.ts'
 import type { Minimum } from '../estimation/scoring.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
+import { boundCautions, boundResults, isActive } from './bounds.ts'
 import { improperCautions, sampleSizeCautions, standardErrorCautions } from './cautions.ts'
 import { estimateCovariance } from './covariance.ts'
 import { cellEstimates } from './estimates.ts'
@@ -42,7 +44,7 @@ export function fittedResult({ model, moments, objective, minimum, settings, row
   const p = model.indicators.length
   const n = totalSize(moments, convention)
   const T = Math.max(0, n * minimum.value)
-  const covariance = estimateCovariance(model, objective, standardErrors, rows)
+  const covariance = estimateCovariance(model, objective, standardErrors, rows, heldAtBounds(model.bounds, minimum.gamma))
   const estimates = cellEstimates(model, objective.states, minimum.gamma, covariance)
   const unrestricted = objective.unrestrictedLogLikelihood
   const logLikelihood = unrestricted - T / 2
@@ -50,6 +52,7 @@ export function fittedResult({ model, moments, objective, minimum, settings, row
   const residual = residualSize(model, moments, objective, convention)
   const scaled =
     settings.statistic === 'mean-scaled' && rows !== null ? scaledParts({ model, moments, objective, rows, T, baseline }) : null
+  const bounds = boundResults(model, minimum.gamma)
   return {
     ...blank(model, n, convergence),
     state: 'fitted',
@@ -78,9 +81,11 @@ export function fittedResult({ model, moments, objective, minimum, settings, row
       group: model.groups[g]!.name,
       lower: standardisedResiduals(moments.groups[g]!.covariance, state.sigma, p)
     })),
+    bounds,
     cautions: [
       ...improperCautions(model, objective.states),
-      ...standardErrorCautions(estimates),
+      ...boundCautions(bounds, heldAtBounds(model.bounds, minimum.gamma).length, { T: scaled?.scaled.T ?? T, df: model.df }),
+      ...standardErrorCautions(estimates.filter((estimate) => !isActive(bounds, estimate))),
       ...minimaCaution(convergence.minima),
       ...sampleSizeCautions(n, model.df)
     ]
@@ -122,6 +127,7 @@ function blank(model: CompiledModel, n: number, convergence: Convergence): FitRe
     standardErrors: null,
     estimates: [],
     residuals: null,
+    bounds: [],
     cautions: [],
     convergence
   }

@@ -3,8 +3,9 @@
  * does not settle the matter, seeded perturbed ones.
  */
 import { seededGenerator } from '../distributions/generator.ts'
+import { heldAtBounds, minimiseWithin } from '../estimation/bounded.ts'
 import type { Objective } from '../estimation/normal-likelihood.ts'
-import { type Minimum, minimise } from '../estimation/scoring.ts'
+import type { Minimum } from '../estimation/scoring.ts'
 import { perturbedStart, startingValues } from '../estimation/starts.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
@@ -30,12 +31,13 @@ export interface SearchResult {
 export function smallestMinimum(model: CompiledModel, moments: SampleMoments, objective: Objective): SearchResult {
   const generator = seededGenerator(startSeed)
   const ordinary = startingValues(model, moments)
-  const all = [minimise(objective, feasible(model, objective, ordinary))]
+  const search = (start: Float64Array) => minimiseWithin(objective, feasible(model, objective, start), model.bounds)
+  const all = [search(ordinary)]
   const ended = () => all.filter((minimum) => minimum.stop === 'converged')
   const minima = () => distinct(ended().map((minimum) => minimum.value))
   if (!settled(model, objective, all[0]!)) {
     for (let i = 0; i < (minima() > 1 ? startsAmongSeveralMinima : furtherStarts); i++) {
-      all.push(minimise(objective, feasible(model, objective, perturbedStart(model, ordinary, generator))))
+      all.push(search(perturbedStart(model, ordinary, generator)))
     }
   }
   const best = (ended().length > 0 ? ended() : all).reduce((a, b) => (b.value < a.value || Number.isNaN(a.value) ? b : a))
@@ -46,10 +48,10 @@ function record({ stop, value, iterations }: Minimum, at: number): StartRecord {
   return { start: at === 0 ? 'ordinary' : 'perturbed', stop, minimum: Number.isFinite(value) ? value : null, iterations }
 }
 
-/** Proper, converged, and of a kind that is not known for local minima (crossed loadings, equal intercepts under heavy misfit). */
+/** Proper, within its bounds, converged, and of a kind that is not known for local minima (crossed loadings, equal intercepts under heavy misfit). */
 function settled(model: CompiledModel, objective: Objective, minimum: Minimum): boolean {
   if (minimum.stop !== 'converged') return false
-  if (crossedLoadings(model)) return false
+  if (crossedLoadings(model) || heldAtBounds(model.bounds, minimum.gamma).length > 0) return false
   objective.evaluate(minimum.gamma)
   if (improperCautions(model, objective.states).length > 0) return false
   const freeMeans = model.groups.some((g) => g.free.some((cell) => cell.matrix === 'alpha'))

@@ -156,6 +156,7 @@ function result(view: CandidateView, f: Figures, weight: number): CandidateResul
     srmr: f.srmr,
     srmrWithMeans: f.srmr,
     plugIn: null,
+    bounds: [],
     standardErrors: 'expected',
     estimates: estimates(groups),
     residuals: groups.map((group, g) => ({ group, lower: lower(g) })),

@@ -221,7 +221,7 @@ function checkOccasionLists({ data }: Plan, { name, over }: RepeatedLadder, fail
     if (occasion.indicators.length !== first.indicators.length) {
       fail(
         `.over.${t}`,
-        `There are ${occasion.indicators.length} indicators at "${occasion.name}" and ${first.indicators.length} at "${first.name}".`,
+        `"${first.name}" lists ${counted(first.indicators.length)} and "${occasion.name}" lists ${occasion.indicators.length}.`,
         'List the same indicators at every occasion, in the same order.'
       )
     }
@@ -263,4 +263,8 @@ function checkMeasures(
       `"${first.indicators[idle]}" is listed at "${first.name}", but "${candidate}" does not measure by it.`,
       'Remove it from every occasion.'
     )
+}
+
+function counted(indicators: number): string {
+  return `${indicators} ${indicators === 1 ? 'indicator' : 'indicators'}`
 }

@@ -269,6 +269,58 @@ const inChanges: BadInput[] = [
   )
 ]
 
+/** The good plan, one more candidate by a and b alone, and a ladder of it over time. */
+const HALF = '  Half:\n    factors: { F: [a, b] }\n'
+const repeated = (name: string, over: string, message: string, more = ''): BadInput =>
+  added(name, `${HALF}ladders:\n  Up: { invariance of: Half, over: ${over}, through: metric${more} }\n`, message)
+
+const overTime: BadInput[] = [
+  repeated(
+    'occasions of unequal length',
+    '{ May: [a, b], June: [c] }',
+    'line 14, column 51: "May" lists 2 indicators and "June" lists 1. List the same indicators at every occasion, in the same order.'
+  ),
+  repeated(
+    'an unknown indicator at an occasion',
+    '{ May: [a, b], June: [c, dd] }',
+    'line 14, column 61: There is no indicator "dd". Did you mean "d"?'
+  ),
+  repeated(
+    'an indicator at two occasions',
+    '{ May: [a, b], June: [c, a] }',
+    'line 14, column 61: The indicator "a" stands at "May" and at "June".'
+  ),
+  repeated('one occasion', '{ May: [a, b] }', 'The ladder "Up" needs two occasions or more.'),
+  repeated('occasions as a list', '[a, b]', 'The occasions'),
+  repeated('an occasion without indicators', '{ May: [], June: [] }', 'No indicator is listed at "May".'),
+  repeated(
+    'a candidate stated for another occasion',
+    '{ May: [c, d], June: [a, b] }',
+    'line 14, column 38: "Half" measures by "a", which is not listed at "May".'
+  ),
+  repeated(
+    'occasions and a grouping',
+    '{ May: [a, b], June: [c, d] }',
+    'goes across groups or over occasions, not both.',
+    ', across: site'
+  ),
+  added(
+    'a candidate across groups over time',
+    '  Half:\n    factors: { F: [a, b] }\n    across: site\nladders:\n  Up: { invariance of: Half, over: { May: [a, b], June: [c, d] }, through: metric }\n',
+    '"Half" is modelled across "site", and a ladder over time describes all cases together.'
+  ),
+  added(
+    'an indicator that the candidate over time does not use',
+    `${HALF.replace('[a, b]', '[a]')}ladders:\n  Up: { invariance of: Half, over: { May: [a, b], June: [c, d] }, through: metric }\n`,
+    '"b" is listed at "May", but "Half" does not measure by it.'
+  ),
+  added(
+    'two ladders of one candidate over different occasions',
+    `${HALF}ladders:\n  Up: { invariance of: Half, over: { May: [a, b], June: [c, d] }, through: metric }\n  On: { invariance of: Half, over: { May: [a, b], July: [c, d] }, through: metric }\n`,
+    'The ladder "On" takes "Half" over other occasions.'
+  )
+]
+
 const inTheRest: BadInput[] = [
   added(
     'an unknown candidate on a ladder',
@@ -317,4 +369,4 @@ const inTheRest: BadInput[] = [
   )
 ]
 
-export const planCases: BadInput[] = [...asText, ...inData, ...inCandidates, ...inChanges, ...inTheRest]
+export const planCases: BadInput[] = [...asText, ...inData, ...inCandidates, ...inChanges, ...overTime, ...inTheRest]

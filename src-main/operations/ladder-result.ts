@@ -58,7 +58,7 @@ type StepTest = DifferenceTest & Pick<DifferenceResult, 'method' | 'scaling'> & 
 /** The test that is valid for this very pair; null where none is. */
 function testOf(ground: StepGround, rules: Rules): StepTest | null {
   if (refusal(ground) !== null || ground.relation?.relation !== 'nested') return null
-  const plain = isScaled(ground)
+  const plain = anyScaled(ground)
     ? scaledTest(ground, rules)
     : { ...normalDifference(sideOf(ground.upper!), sideOf(ground.lower!)), scaling: null, method: 'normal theory' as const }
   if (plain === null) return null
@@ -73,24 +73,41 @@ function sideOf({ T, df, scaled }: CandidateResult): ScaledSide {
   return { T: T!, df, scaling: scaled?.scaling ?? Number.NaN }
 }
 
+/** Both sides with scaling factors of one form: where the forms differ, of the one that is defined for every model. */
+function scaledSides(lower: CandidateResult, upper: CandidateResult): [ScaledSide, ScaledSide] {
+  if (lower.scaled === null || upper.scaled === null || lower.scaled.form === upper.scaled.form)
+    return [sideOf(lower), sideOf(upper)]
+  const other = (side: CandidateResult): ScaledSide => ({
+    ...sideOf(side),
+    scaling: side.scaled!.scalingAtUnrestricted ?? Number.NaN
+  })
+  return [other(lower), other(upper)]
+}
+
+/** A scaled statistic on either side: the plain difference is then not the one to test. */
+function anyScaled({ lower, upper }: StepGround): boolean {
+  return lower?.scaled != null || upper?.scaled != null
+}
+
 /** Both sides carry a scaled statistic (or have no df to scale). */
-export function isScaled({ lower, upper }: Pick<StepGround, 'lower' | 'upper'>): boolean {
-  return upper?.scaled != null && (lower?.scaled != null || lower?.df === 0)
+function bothScaled(lower: CandidateResult, upper: CandidateResult): boolean {
+  return upper.scaled !== null && (lower.scaled !== null || lower.df === 0)
 }
 
 /** Satorra & Bentler 2001 where it is defined and the rules leave it the choice, else the strictly positive form of 2010. */
 function scaledTest({ lower, upper, scalingAtUpper }: StepGround, rules: Rules) {
-  const ordinary = rules.scaledDifference === 'ordinary' ? scaledDifference(sideOf(upper!), sideOf(lower!)) : null
+  if (!bothScaled(lower!, upper!)) return null
+  const [general, restricted] = scaledSides(lower!, upper!)
+  const ordinary = rules.scaledDifference === 'ordinary' ? scaledDifference(restricted, general) : null
   if (ordinary !== null) return ordinary
-  return scalingAtUpper == null && lower!.df > 0
-    ? null
-    : strictlyPositiveDifference(sideOf(upper!), sideOf(lower!), scalingAtUpper ?? 0)
+  return scalingAtUpper == null && lower!.df > 0 ? null : strictlyPositiveDifference(restricted, general, scalingAtUpper ?? 0)
 }
 
 /** Whether the test of this pair needs the lower rung's scaling at the upper rung's estimates. */
 export function needsScalingAtUpper(lower: CandidateResult, upper: CandidateResult, rules: Rules): boolean {
-  if (!isScaled({ lower, upper }) || lower.df === 0) return false
-  return rules.scaledDifference === 'strictly positive' || scaledDifference(sideOf(upper), sideOf(lower)) === null
+  if (!bothScaled(lower, upper) || lower.df === 0) return false
+  const [general, restricted] = scaledSides(lower, upper)
+  return rules.scaledDifference === 'strictly positive' || scaledDifference(restricted, general) === null
 }
 
 interface Refusal {

@@ -7,16 +7,23 @@
  * group, both taken at the model-implied moments: of the forms in use, which differ in finite samples, this is form (b) of
  * fixtures/reference/03a, and it is named wherever c is printed. Delta'B Delta are the cross-products of the model's own
  * casewise scores. A is of the order of the moments, so unlike complete data this needs a matrix of that size a group.
+ *
+ * Far from the data A at the model's moments need not be positive definite; then form (a), at the unrestricted estimates, takes
+ * its place and is named. A difference test takes the same form on both sides.
  */
-import { cholesky, choleskySolve } from '../matrix/symmetric.ts'
+import { cholesky, choleskySolve, mirrorLower, multiply } from '../matrix/symmetric.ts'
 import type { ModelCells } from '../model/cells.ts'
 import { type CompiledModel, compileModel } from '../model/compile.ts'
 import type { GroupState } from '../model/implied-moments.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
 import { casewiseScores, scoreCrossProducts } from './casewise.ts'
+import { cellColumns, sideBySide } from './cell-columns.ts'
 import { normalObjective, type Objective } from './normal-likelihood.ts'
 
-export const missingScalingForm = 'Yuan & Bentler 2000, both informations at the model-implied moments'
+export const missingScalingForms = {
+  atModel: 'Yuan & Bentler 2000, both informations at the model-implied moments',
+  atUnrestricted: 'Yuan & Bentler 2000, both informations at the unrestricted estimates'
+}
 
 /**
  * c of a fitted model; null without degrees of freedom or with a singular information.
@@ -34,6 +41,80 @@ export function missingScalingFactor(
   const whole = unrestrictedTrace(objective.states, moments, rows)
   const own = modelTrace(model, objective, rows)
   return whole === null || own === null ? null : (whole - own) / model.df
+}
+
+/**
+ * c with both informations at the unrestricted estimates, form (a): defined for every model, where form (b) need not be when a
+ * model is far from the data, for A is not positive definite there.
+ */
+export function missingScalingAtUnrestricted(
+  model: CompiledModel,
+  objective: Objective,
+  moments: SampleMoments,
+  rows: readonly Float64Array[]
+): number | null {
+  if (model.df <= 0) return null
+  const q = model.parameters
+  const information = new Float64Array(q * q)
+  const cross = new Float64Array(q * q)
+  let trace = 0
+  for (let g = 0; g < rows.length; g++) {
+    const state = objective.states[g]!
+    const { covariance, mean } = moments.groups[g]!
+    const whole = unrestrictedInformation(moments, g, { p: state.p, sigma: covariance, mu: mean! })
+    const size = whole.model.parameters
+    const meat = scoreCrossProducts(whole.model, whole.objective.states, [rows[g]!])
+    const jacobian = momentJacobian(model, g, state, whole.model.gammaLabels)
+    addQuadratic(whole.information, jacobian, size, q, information)
+    addQuadratic(meat, jacobian, size, q, cross)
+    const part = traceOfSolved(whole.information, meat, size)
+    if (part === null) return null
+    trace += part
+  }
+  const own = traceOfSolved(information, cross, q)
+  return own === null ? null : (trace - own) / model.df
+}
+
+/** d(moments)/d gamma of one group at its state, moments x q, rows in the order of the unrestricted model's labels. */
+function momentJacobian(model: CompiledModel, g: number, state: GroupState, labels: readonly string[]): Float64Array {
+  const { p, m } = state
+  const q = model.parameters
+  const group = model.groups[g]!
+  const { u, v, c, s, meanFactor } = cellColumns(group, p, m, model.meanStructure)
+  const wide = 2 * m
+  const columns = new Float64Array(p * wide)
+  sideBySide(state, columns)
+  const at = (i: number, column: number) => (column < p ? (column === i ? 1 : 0) : columns[i * wide + column - p]!)
+  const places = labels.map((label) => label.split(' '))
+  const out = new Float64Array(labels.length * q)
+  group.free.forEach(({ gammas, weights }, cell) => {
+    places.forEach(([kind, first, second], row) => {
+      const [i, j] = [Number(first), Number(second)]
+      let slope = 0
+      if (kind === 'm' && s[cell]! >= 0)
+        slope = (meanFactor[cell]! < 0 ? 1 : state.factorMean[meanFactor[cell]!]!) * at(i, s[cell]!)
+      if (kind === 's' && u[cell]! >= 0) {
+        slope = c[cell]! * (at(i, u[cell]!) * at(j, v[cell]!) + at(i, v[cell]!) * at(j, u[cell]!))
+      }
+      if (slope !== 0) for (let k = 0; k < gammas.length; k++) out[row * q + gammas[k]!]! += weights[k]! * slope
+    })
+  })
+  return out
+}
+
+/** Adds J' M J, M the n x n lower triangle of a symmetric matrix and J n x q, into the lower triangle of `sum`. */
+function addQuadratic(lower: Float64Array, jacobian: Float64Array, n: number, q: number, sum: Float64Array): void {
+  const whole = Float64Array.from(lower)
+  mirrorLower(whole, n)
+  const half = new Float64Array(n * q)
+  multiply(whole, jacobian, n, n, q, half)
+  for (let row = 0; row < n; row++) {
+    for (let i = 0; i < q; i++) {
+      const value = jacobian[row * q + i]!
+      if (value === 0) continue
+      for (let j = 0; j <= i; j++) sum[i * q + j]! += value * half[row * q + j]!
+    }
+  }
 }
 
 /**

@@ -5,14 +5,19 @@ import { chiSquareUpper } from '../distributions/chi-square.ts'
 import type { Objective } from '../estimation/normal-likelihood.ts'
 import type { CaseGroup } from '../estimation/robust-scores.ts'
 import { baselineScaling, scalingFactor } from '../estimation/scaling.ts'
-import { missingBaselineScaling, missingScalingFactor, missingScalingForm } from '../estimation/scaling-missing.ts'
+import {
+  missingBaselineScaling,
+  missingScalingAtUnrestricted,
+  missingScalingFactor,
+  missingScalingForms
+} from '../estimation/scaling-missing.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
-import type { FitResult } from './fit-result.ts'
+import type { FitResult, ScaledResult } from './fit-result.ts'
 import { type RobustIndices, robustIndices } from './robust-indices.ts'
 
 export interface ScaledParts {
-  scaled: NonNullable<FitResult['scaled']>
+  scaled: ScaledResult
   /** Of the population-consistent kind; null where the baseline has no scaling factor. */
   indices: RobustIndices | null
   plugIn: FitResult['plugIn']
@@ -32,10 +37,10 @@ export interface ScaledInput {
 export function scaledParts(input: ScaledInput): ScaledParts | null {
   const { model, moments, T, baseline, objective } = input
   const missing = moments.groups.some((g) => (g.patterns?.length ?? 0) > 1)
-  const scaling = missing ? missingScalingFactor(model, objective, moments, input.rows) : completeScaling(input)
-  if (scaling === null || !(scaling > 0)) return null
-  const form = missing ? missingScalingForm : 'Satorra & Bentler 1994'
-  const scaled = { T: T / scaling, p: chiSquareUpper(T / scaling, model.df), scaling, form }
+  const found = missing ? missingScaling(input) : completeScaling(input)
+  if (found === null) return null
+  const { scaling } = found
+  const scaled = { T: T / scaling, p: chiSquareUpper(T / scaling, model.df), ...found }
   const ofBaseline = missing
     ? missingBaselineScaling(moments, input.rows)
     : (baselineScaling(caseGroups(input), model.indicators.length)?.scaling ?? null)
@@ -61,10 +66,22 @@ function caseGroups({ rows, model }: ScaledInput): CaseGroup[] {
   return rows.map((values) => ({ rows: values, size: values.length / model.indicators.length }))
 }
 
-function completeScaling(input: ScaledInput): number | null {
+type Scaling = Pick<ScaledResult, 'scaling' | 'form' | 'scalingAtUnrestricted'>
+
+function completeScaling(input: ScaledInput): Scaling | null {
   const { model, objective } = input
   const q = model.parameters
   const curvature = new Float64Array(q * q)
   objective.derive(new Float64Array(q), curvature)
-  return scalingFactor({ model, states: objective.states, groups: caseGroups(input), curvature })?.scaling ?? null
+  const scaling = scalingFactor({ model, states: objective.states, groups: caseGroups(input), curvature })?.scaling ?? null
+  return scaling === null ? null : { scaling, form: 'Satorra & Bentler 1994', scalingAtUnrestricted: null }
+}
+
+/** The form of the plan's methods where it is defined, else the one that always is. */
+function missingScaling({ model, objective, moments, rows }: ScaledInput): Scaling | null {
+  const scalingAtUnrestricted = missingScalingAtUnrestricted(model, objective, moments, rows)
+  const atModel = missingScalingFactor(model, objective, moments, rows)
+  if (atModel !== null && atModel > 0) return { scaling: atModel, form: missingScalingForms.atModel, scalingAtUnrestricted }
+  if (scalingAtUnrestricted === null || !(scalingAtUnrestricted > 0)) return null
+  return { scaling: scalingAtUnrestricted, form: missingScalingForms.atUnrestricted, scalingAtUnrestricted }
 }

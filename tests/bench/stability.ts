@@ -43,11 +43,12 @@ export function stabilityInput(count: number): ResampleInput {
   return {
     rungs: rungs.map(({ name }, i) => {
       const cells = candidateCells(resolveCandidate(name, [base, ...rungs]), { indicators, grouping: 'group', groups, means: true })
-      return { cells, sample: 0, gamma: fitModel(cells, moments, { convention: 'normal' }).gamma, nested: i > 0 }
+      return { cells, sample: 0, gamma: fitModel(cells, moments, { convention: 'normal' }).gamma, nested: i > 0, watched: [] }
     }),
     samples: [{ indicators, groups: rows.map((values, g) => ({ name: groups[g]!, rows: values })), patterns: false }],
     strata: groups.map(() => n),
     statistic: 'normal theory',
+    scalingAtUpper: 'where needed',
     seed: 1,
     first: 0,
     count
@@ -56,7 +57,7 @@ export function stabilityInput(count: number): ResampleInput {
 
 const threadCode = `
 const { parentPort, workerData } = require('node:worker_threads')
-import(workerData.module).then(({ resampleLadder }) => parentPort.postMessage(resampleLadder(workerData.input)))
+import(workerData.module).then(({ resampleLadder }) => parentPort.postMessage(resampleLadder(workerData.input, () => null)))
 `
 
 /** One thread's share of the resamples. */

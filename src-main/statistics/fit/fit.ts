@@ -66,7 +66,7 @@ const stopReasons: Record<Minimum['stop'], string> = {
 }
 
 /** Labels of the parameters that the information leaves open at the solution; one held at its bound is settled by that. */
-function undetermined(model: CompiledModel, { gamma, curvature }: Minimum): string[] {
+export function undetermined(model: CompiledModel, { gamma, curvature }: Minimum): string[] {
   const held = heldAtBounds(model.bounds, gamma)
   const free = Array.from(gamma.keys()).filter((k) => !held.includes(k))
   const information = held.length === 0 ? curvature : submatrix(curvature, gamma.length, free)

@@ -1,12 +1,13 @@
 import { describe, expect, test } from 'vitest'
 import { stabilityInput } from '../../../tests/bench/stability.ts'
+import { scalingAtRestricted } from '../comparison/scaled-difference.ts'
 import { seededGenerator } from '../distributions/generator.ts'
 import { fitModel } from '../fit/fit.ts'
 import { splitByPattern } from '../moments/missing-patterns.ts'
 import { completeCaseMoments } from '../moments/sample-moments.ts'
 import { saturatedMoments } from '../moments/saturated-em.ts'
 import { drawWeights, resampleGenerator } from './case-weights.ts'
-import { type ResampleInput, resampleLadder } from './ladder-resamples.ts'
+import { type ResampleInput, resampleLadder as resampled } from './ladder-resamples.ts'
 import { drawnRows, weightedMoments } from './weighted-moments.ts'
 
 /** 60 rows of three correlated columns far from zero; about one answer in eight missing when asked for. */
@@ -20,6 +21,8 @@ function someRows(missing: boolean): Float64Array {
   }
   return rows
 }
+
+const resampleLadder = (input: ResampleInput) => resampled(input, scalingAtRestricted)
 
 function drawn(strata: number[], seed = 3, index = 0): Int32Array {
   const weights = new Int32Array(strata.reduce((sum, size) => sum + size, 0))
@@ -143,6 +146,53 @@ describe('a ladder on resamples', () => {
     for (const rung of fits.flat()) {
       expect(rung.scaled!.scaling).toBeGreaterThan(0.7)
       expect(rung.scaled!.T).toBeCloseTo(rung.T! / rung.scaled!.scaling, 10)
+    }
+  })
+
+  test('gives the scaling of the strictly positive difference where the study asks for it', () => {
+    const scaled = { ...input, count: 1, statistic: 'mean-scaled' as const }
+    expect(resampleLadder(scaled).fits[0]!.map((fit) => fit.scalingOfLower)).toEqual([null, null, null, null])
+    const always = resampleLadder({ ...scaled, scalingAtUpper: 'always' }).fits[0]!
+    expect(always[0]!.scalingOfLower).toBeNull()
+    for (const [i, fit] of always.entries()) {
+      if (i === 0) continue
+      // At the restricted estimates, which are near the general model's own in an invariant population.
+      expect(Math.abs(fit.scalingOfLower! / always[i - 1]!.scaled!.scaling - 1)).toBeLessThan(0.2)
+    }
+  })
+
+  test('tells the cells that are watched, a factor covariance as a correlation', () => {
+    const watched = [
+      { part: 'factor covariance' as const, of: ['F0', 'F3'], group: 'g2' },
+      { part: 'residual variance' as const, of: ['y4'], group: 'g1' }
+    ]
+    const { fits } = resampleLadder({ ...input, count: 1, rungs: [{ ...input.rungs[0]!, watched }] })
+    const weights = drawn(input.strata, input.seed)
+    const groups = drawnRows(input.samples[0]!, weights).map((rows, g) => ({ name: `g${g + 1}`, ...completeCaseMoments(rows, 9) }))
+    const { estimates } = fitModel(
+      input.rungs[0]!.cells,
+      { indicators: input.samples[0]!.indicators, groups },
+      { convention: 'normal' }
+    ).fit
+    const find = (part: string, of: string[], group: string) =>
+      estimates.find((e) => e.part === part && e.group === group && [...e.of].sort().join() === of.join())!
+    expect(fits[0]![0]!.watched[0]).toBeCloseTo(find('factor covariance', ['F0', 'F3'], 'g2').standardized!, 5)
+    expect(fits[0]![0]!.watched[1]).toBeCloseTo(find('residual variance', ['y4'], 'g1').estimate!, 5)
+  })
+
+  test('carries the sampling error twice: differences of T exceed those of the sample by their df on average', () => {
+    const many = resampleLadder({ ...input, count: 150 })
+    const moments = {
+      indicators: input.samples[0]!.indicators,
+      groups: input.samples[0]!.groups.map(({ name, rows }) => ({ name, ...completeCaseMoments(rows, 9) }))
+    }
+    const sample = input.rungs.map(({ cells }) => fitModel(cells, moments, { convention: 'normal' }).fit)
+    for (let i = 1; i < 4; i++) {
+      const df = sample[i]!.df - sample[i - 1]!.df
+      const T = sample[i]!.T! - sample[i - 1]!.T!
+      const mean = many.fits.reduce((sum, fits) => sum + (fits[i]!.T! - fits[i - 1]!.T!) / 150, 0)
+      // A noncentral chi-square with noncentrality T has variance 2 df + 4 T; five standard errors of a mean of 150.
+      expect(Math.abs(mean - (T + df))).toBeLessThan(5 * Math.sqrt((2 * df + 4 * T) / 150) + 0.1 * df)
     }
   })
 

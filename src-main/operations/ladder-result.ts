@@ -250,12 +250,17 @@ const methodWords: Record<DifferenceResult['method'], string> = {
   'boundary mixture': 'chi-square difference, referred to a mixture of chi-squares,'
 }
 
+/** The test in words; a mixture of a scaled difference says both. */
+function testWords({ method, scaling }: DifferenceResult): string {
+  return `${method === 'boundary mixture' && scaling !== null ? 'scaled ' : ''}${methodWords[method]}`
+}
+
 function testCriterion({ difference }: StepResult, { boundary }: StepGround, { alpha }: Rules): Criterion {
-  const { T, df, p, holmP, method } = difference!
+  const { T, df, p, holmP } = difference!
   const holds = (holmP ?? p) >= alpha
   const adjusted = holmP === null ? '' : `, ${pIs('Holm p', holmP)}`
   const significant = holds ? 'not significant' : 'significant'
-  const numbers = `The ${methodWords[method]} is ${statistic(T)} on ${df} df, ${pIs('p', p)}${adjusted}`
+  const numbers = `The ${testWords(difference!)} is ${statistic(T)} on ${df} df, ${pIs('p', p)}${adjusted}`
   return { holds, sentence: `${numbers}: ${significant} at alpha = ${levelText(alpha)}${boundaryClause(boundary ?? null)}` }
 }
 

@@ -24,13 +24,41 @@ export interface ClimbInput {
 }
 
 export async function climb(ladder: LadderPlan, input: ClimbInput, crew: Crew, signal?: AbortSignal): Promise<LadderResult> {
-  const rungs = ladderRungs(ladder, input.plan.candidates)
-  const grounds: StepGround[] = []
-  for (let i = 1; i < rungs.length; i++) grounds.push(await stepGround(rungs[i - 1]!, rungs[i]!, input, crew, signal))
-  return ladderResult(ladder.name, rungs, grounds, input.plan.rules)
+  const { rungs, steps } = await ladderSteps(ladder, input, crew, signal)
+  return ladderResult(
+    ladder.name,
+    rungs,
+    steps.map((step) => step.ground),
+    input.plan.rules
+  )
 }
 
-async function stepGround(from: string, to: string, input: ClimbInput, crew: Crew, signal?: AbortSignal): Promise<StepGround> {
+/** A step before it is judged, and what it puts on the boundary. */
+export interface LadderStep {
+  ground: StepGround
+  boundary: StepBoundary | null
+}
+
+/** The parameters that a step puts at their bounds, and what its test is for given estimates of them in the lower rung. */
+export interface StepBoundary {
+  parameters: BoundaryParameter[]
+  at: (estimates: readonly (number | null)[]) => BoundaryGround
+}
+
+/** The rungs of a ladder and its steps, bottom first; all that is known of them but the judgement. */
+export async function ladderSteps(
+  ladder: LadderPlan,
+  input: ClimbInput,
+  crew: Crew,
+  signal?: AbortSignal
+): Promise<{ rungs: string[]; steps: LadderStep[] }> {
+  const rungs = ladderRungs(ladder, input.plan.candidates)
+  const steps: LadderStep[] = []
+  for (let i = 1; i < rungs.length; i++) steps.push(await ladderStep(rungs[i - 1]!, rungs[i]!, input, crew, signal))
+  return { rungs, steps }
+}
+
+async function ladderStep(from: string, to: string, input: ClimbInput, crew: Crew, signal?: AbortSignal): Promise<LadderStep> {
   const { entries, results, family, plan } = input
   const [general, restricted] = [from, to].map((name) => entries.find((e) => e.candidate.name === name)!) as [Entry, Entry]
   const [lower, upper] = [from, to].map((name) => results.find((r) => r.name === name) ?? null) as [
@@ -52,14 +80,18 @@ async function stepGround(from: string, to: string, input: ClimbInput, crew: Cre
     sizes: general.sample.moments.groups.map((g) => g.n),
     addsLoadings: upperCandidate.equal.includes('loadings') && !lowerCandidate.equal.includes('loadings')
   }
-  if (relation?.relation !== 'nested' || lower?.state !== 'fitted' || upper?.state !== 'fitted') return ground
-  const boundary = boundaryOf(general.cells, restricted.cells, lowerCandidate, upperCandidate)
+  if (relation?.relation !== 'nested' || lower?.state !== 'fitted' || upper?.state !== 'fitted') return { ground, boundary: null }
+  const found = boundaryOf(general.cells, restricted.cells, lowerCandidate, upperCandidate)
+  const boundary = found === null ? null : stepBoundary(found, general, upper.df - lower.df, input)
   return {
-    ...ground,
-    boundary: boundary === null ? null : boundaryGround(boundary, general, lower, upper, input),
-    scalingAtUpper: needsScalingAtUpper(lower, upper, plan.rules)
-      ? await scalingAtUpper(general, restricted, input.memory, crew, signal)
-      : null
+    ground: {
+      ...ground,
+      boundary: boundary?.at(boundary.parameters.map((parameter) => estimateOf(parameter, lower))) ?? null,
+      scalingAtUpper: needsScalingAtUpper(lower, upper, plan.rules)
+        ? await scalingAtUpper(general, restricted, input.memory, crew, signal)
+        : null
+    },
+    boundary
   }
 }
 
@@ -107,21 +139,20 @@ function solutions(lower: Entry, upper: Entry, memory: StudyMemory) {
 }
 
 /** The mixture that a step on the boundary is referred to: weights for k parameters at their bounds, the others' df added. */
-function boundaryGround(
-  { parameters, words }: Boundary,
-  general: Entry,
-  lower: CandidateResult,
-  upper: CandidateResult,
-  { memory, plan }: ClimbInput
-): BoundaryGround {
-  const beyond = parameters.filter((parameter) => isBeyond(parameter, lower)).length
+function stepBoundary({ parameters, words }: Boundary, general: Entry, df: number, { memory, plan }: ClimbInput): StepBoundary {
   const k = parameters.length
-  // With several bounds and an estimate beyond one of them, the bounded fit is another one altogether.
-  if (k > 3 || (k > 1 && beyond > 0)) return { words, parts: null, beyond: false }
-  const weights = k === 1 ? half : severalWeights(parameters, general, memory, plan)
-  const interior = upper.df - lower.df - k
-  const parts = weights === null || interior < 0 ? null : weights.map(({ df, weight }) => ({ df: df + interior, weight }))
-  return { words, parts, beyond: beyond > 0 }
+  const weights = k === 1 ? half : k > 3 ? null : severalWeights(parameters, general, memory, plan)
+  const interior = df - k
+  const parts = weights === null || interior < 0 ? null : weights.map((part) => ({ df: part.df + interior, weight: part.weight }))
+  return {
+    parameters,
+    at: (estimates) => {
+      const beyond = parameters.some((parameter, i) => isBeyond(parameter, estimates[i] ?? null))
+      // With several bounds and an estimate beyond one of them, the bounded fit is another one altogether.
+      if (k > 3 || (k > 1 && beyond)) return { words, parts: null, beyond: false }
+      return { words, parts, beyond }
+    }
+  }
 }
 
 const half: MixturePart[] = [
@@ -141,12 +172,15 @@ function severalWeights(
   return correlations === null ? null : chiBarSquareWeights(correlations)
 }
 
-/** Whether the lower rung's own estimate lies beyond the bound. A covariance is judged by its correlation. */
-function isBeyond({ part, of, group, at, side }: BoundaryParameter, lower: CandidateResult): boolean {
+/** The lower rung's own estimate; of a covariance, the correlation. */
+function estimateOf({ part, of, group }: BoundaryParameter, lower: CandidateResult): number | null {
   const cell = lower.estimates.find(
     (e) => e.part === part && e.group === group && JSON.stringify([...e.of].sort()) === JSON.stringify([...of].sort())
   )
-  const value = part === 'factor covariance' ? cell?.standardized : cell?.estimate
-  if (value == null) return false
-  return side === 'below' ? value >= at : value <= at
+  return (part === 'factor covariance' ? cell?.standardized : cell?.estimate) ?? null
+}
+
+function isBeyond({ at, side }: BoundaryParameter, estimate: number | null): boolean {
+  if (estimate === null) return false
+  return side === 'below' ? estimate >= at : estimate <= at
 }

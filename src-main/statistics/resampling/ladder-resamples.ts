@@ -146,7 +146,7 @@ function scalingOfLower(
   const [lower, upper] = [fits[i - 1]!.scaled, fits[i]!.scaled]
   if (lower === null || upper === null) return null
   const ordinary = models[i]!.df * upper.scaling - models[i - 1]!.df * lower.scaling
-  if (scalingAtUpper === 'where needed' && ordinary > 0) return null
+  if (scalingAtUpper === 'where needed' && ordinary > 0 && lower.form === upper.form) return null
   return scalingAtRestricted({
     general: general.cells,
     generalGamma: [...fittings[i - 1]!.minimum.gamma],

@@ -13,6 +13,8 @@ export interface ScoringSettings {
   /** Converged when max |g_k| scale_k is below this; scale_k = 1 / sqrt(curvature_kk), the parameter's own unit. */
   readonly tolerance: number
   readonly iterations: number
+  /** Ends as converged at once where F is below this, whatever the gradient: for asking only whether a fit is perfect. */
+  readonly enough?: number
 }
 
 export const ordinaryScoring: ScoringSettings = Object.freeze({ tolerance: 1e-9, iterations: 500 })
@@ -61,7 +63,7 @@ export function minimise(objective: Objective, start: Float64Array, settings: Sc
   }
   for (; point.iterations < settings.iterations; point.iterations++) {
     point.largestGradient = scaledGradient(point.gradient, point.curvature)
-    if (point.largestGradient < settings.tolerance) {
+    if (point.largestGradient < settings.tolerance || point.value < (settings.enough ?? Number.NEGATIVE_INFINITY)) {
       point.stop = 'converged'
       break
     }

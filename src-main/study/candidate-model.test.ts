@@ -140,6 +140,120 @@ describe('changes', () => {
   })
 })
 
+const loading = (indicator: string, factor = 'F') => ({ part: 'loading', of: [indicator, factor] })
+const residual = (indicator: string) => ({ part: 'residual variance', of: [indicator] })
+const twice = { do: 'constrain', terms: [{ cell: loading('b') }, { cell: loading('c'), times: -2 }], to: 0 }
+
+describe('linear constraints', () => {
+  it('are equations among the labels, each worth a degree of freedom', () => {
+    const model = cells({ change: [twice] })
+    const [b, c] = [1, 2].map((i) => model.groups[0]!.loadings[i]![0] as string)
+    expect(model.constraints).toEqual([
+      {
+        terms: [
+          { label: b, weight: 1 },
+          { label: c, weight: -2 }
+        ],
+        equals: 0
+      }
+    ])
+    expect(compileModel(model).df).toBe(9)
+  })
+
+  it('move fixed cells to the other side, and fix what is left no choice', () => {
+    const sum = { do: 'constrain', terms: ['a', 'b', 'c'].map((i) => ({ cell: loading(i) })), to: 3 }
+    const model = cells({ change: [sum] })
+    expect(model.constraints[0]!.terms.map((term) => term.weight)).toEqual([1, 1])
+    expect(model.constraints[0]!.equals).toBe(2)
+    const settled = cells({ change: [sum, twice] })
+    expect(settled.constraints).toEqual([])
+    expect(settled.groups[0]!.loadings.slice(0, 3).map((row) => (row[0] as number).toFixed(9))).toEqual([
+      '1.000000000',
+      '1.333333333',
+      '0.666666667'
+    ])
+  })
+
+  it('say the same in any scaling: the sum of the loadings under effects coding is already 3', () => {
+    const sum = { do: 'constrain', terms: ['a', 'b', 'c'].map((i) => ({ cell: loading(i) })), to: 3 }
+    expect(df({ scaling: 'effects coding', change: [sum] })).toBe(8)
+  })
+
+  it('hold for cells that are equal to others', () => {
+    const equal = { do: 'equal', cells: [residual('a'), residual('b')] }
+    const weighted = { do: 'constrain', terms: [{ cell: residual('b') }, { cell: residual('d'), times: -3 }], to: 0 }
+    const model = cells({ change: [equal, weighted] })
+    expect(model.constraints[0]!.terms[0]!.label).toBe(model.groups[0]!.residualCovariances[0]![0])
+    expect(compileModel(model).df).toBe(10)
+  })
+
+  it('stand within each group, in one group, or across groups', () => {
+    const across = { across: 'site', equalAcrossGroups: [] }
+    expect(df({ ...across, change: [twice] }, twoPlaces)).toBe(18)
+    expect(df({ ...across, change: [{ ...twice, group: 'south' }] }, twoPlaces)).toBe(17)
+    const terms = [
+      { cell: loading('b'), group: 'north' },
+      { cell: loading('b'), times: -2, group: 'south' }
+    ]
+    const model = cells({ ...across, change: [{ do: 'constrain', terms, to: 0 }] }, twoPlaces)
+    expect(model.constraints[0]!.terms.map((term) => term.label)).toEqual(model.groups.map((g) => g.loadings[1]![0]))
+    expect(compileModel(model).df).toBe(17)
+  })
+
+  it('that groups held equal imply of each other count once', () => {
+    const model = cells({ across: 'site', equalAcrossGroups: ['loadings'], change: [twice] }, twoPlaces)
+    expect(model.constraints.length).toBe(1)
+    expect(compileModel(model).df).toBe(21)
+  })
+
+  it('go when a later change frees one of their cells', () => {
+    const model = cells({ change: [twice, { do: 'free', cell: loading('c') }] })
+    expect(model.constraints).toEqual([])
+    expect(compileModel(model).df).toBe(8)
+  })
+})
+
+describe('bounds', () => {
+  const above = { do: 'bound', cell: residual('a'), atLeast: 0 }
+
+  it('are limits of labels, and leave the degrees of freedom as they are', () => {
+    const model = cells({ change: [above] })
+    expect(model.bounds).toEqual([{ label: model.groups[0]!.residualCovariances[0]![0], least: 0, most: null }])
+    expect(compileModel(model)).toMatchObject({ df: 8, parameters: 19 })
+    expect(cells({}).bounds).toBeUndefined()
+  })
+
+  it('of cells made equal hold all together', () => {
+    const change = [
+      above,
+      { do: 'bound', cell: residual('b'), atLeast: -1, atMost: 2 },
+      { do: 'equal', cells: [residual('a'), residual('b')] }
+    ]
+    expect(cells({ change }).bounds).toMatchObject([{ least: 0, most: 2 }])
+  })
+
+  it('stand in every group where the cell is free, once where groups are equal', () => {
+    const change = [{ do: 'bound', cell: { part: 'factor variance', of: ['F'] }, atLeast: 0.1 }]
+    const some = cells({ scaling: 'factor variance', across: 'site', equalAcrossGroups: ['loadings'], change }, twoPlaces)
+    expect(some.bounds!.map((bound) => bound.label)).toEqual([some.groups[1]!.factorCovariances[0]![0]])
+    const equal = { across: 'site', equalAcrossGroups: ['residual variances'], change: [above] }
+    expect(cells(equal, twoPlaces).bounds!.length).toBe(1)
+  })
+
+  it('go when a later change frees or fixes the cell', () => {
+    expect(cells({ change: [above, { do: 'free', cell: residual('a') }] }).bounds).toBeUndefined()
+    expect(cells({ change: [above, { do: 'fix', cell: residual('a'), at: 0.5 }] }).bounds).toBeUndefined()
+  })
+
+  it('stay with their parameter where a constraint could give it away', () => {
+    const weighted = { do: 'constrain', terms: [{ cell: residual('a'), times: 5 }, { cell: residual('b') }], to: 1 }
+    const model = cells({ change: [above, weighted] })
+    const compiled = compileModel(model)
+    expect(compiled.gammaLabels).toContain(model.bounds![0]!.label)
+    expect(compiled.bounds!.least[compiled.gammaLabels.indexOf(model.bounds![0]!.label)]).toBe(0)
+  })
+})
+
 describe('a candidate that makes no model is refused, naming it and the cell', () => {
   const refusals: [string, object, ModelFrame, RegExp][] = [
     [
@@ -202,6 +316,94 @@ describe('a candidate that makes no model is refused, naming it and the cell', (
       { change: [{ do: 'fix', cell: { part: 'intercept', of: ['a'] }, at: 0 }] },
       { ...onePlace, means: false },
       /no means/
+    ],
+    [
+      'a constraint on a cell that is not in the model',
+      { change: [{ ...twice, terms: [{ cell: loading('b') }, { cell: loading('a', 'G') }] }] },
+      onePlace,
+      /loading of a on G is not in the model, so it cannot be constrained/
+    ],
+    [
+      'a constraint on fixed cells only',
+      { change: [{ ...twice, terms: [{ cell: loading('a') }, { cell: loading('d', 'G'), times: -1 }] }] },
+      onePlace,
+      /the loading of a on F equals the loading of d on G: every cell of this constraint is fixed/
+    ],
+    [
+      'constraints that contradict each other',
+      { change: [twice, { ...twice, to: 1 }] },
+      onePlace,
+      /the loading of b on F minus twice the loading of c on F is 1 contradicts/
+    ],
+    [
+      'a constraint that a cell fixed later breaks',
+      {
+        change: [twice, { do: 'fix', cell: loading('b'), at: 1 }, { do: 'fix', cell: loading('c'), at: 1 }]
+      },
+      onePlace,
+      /that the loading of b on F equals twice the loading of c on F contradicts/
+    ],
+    [
+      'constraints that leave a negative variance',
+      {
+        change: [
+          { do: 'constrain', terms: [{ cell: residual('a') }, { cell: residual('b') }], to: 1 },
+          { do: 'fix', cell: residual('b'), at: 2 }
+        ]
+      },
+      onePlace,
+      /put the residual variance of a at -1/
+    ],
+    [
+      'a constraint against the scaling',
+      {
+        scaling: 'effects coding',
+        change: [{ do: 'constrain', terms: ['a', 'b', 'c'].map((i) => ({ cell: loading(i) })), to: 4 }]
+      },
+      onePlace,
+      /plus the loading of c on F is 4 contradicts/
+    ],
+    [
+      'a bound of a fixed cell',
+      { change: [{ do: 'bound', cell: loading('a'), atLeast: 0 }] },
+      onePlace,
+      /is fixed at 1, so it cannot/
+    ],
+    ['a bound of an empty cell', { change: [{ do: 'bound', cell: loading('a', 'G'), atLeast: 0 }] }, onePlace, /cannot be bounded/],
+    [
+      'bounds that leave nothing in between',
+      {
+        change: [
+          { do: 'bound', cell: residual('a'), atLeast: 2 },
+          { do: 'bound', cell: residual('b'), atMost: 1 },
+          { do: 'equal', cells: [residual('a'), residual('b')] }
+        ]
+      },
+      onePlace,
+      /nothing lies between the bounds.*at least 2 and at most 1/
+    ],
+    [
+      'a bound beyond which an equality holds the cell',
+      {
+        change: [
+          { do: 'bound', cell: loading('b'), atMost: 0.5 },
+          { do: 'equal', cells: [loading('a'), loading('b')] }
+        ]
+      },
+      onePlace,
+      /loading of b on F is held at 1, which is beyond its bound/
+    ],
+    [
+      'a constraint on bounded cells only',
+      {
+        change: [
+          { do: 'bound', cell: residual('a'), atLeast: 0 },
+          { do: 'bound', cell: residual('b'), atLeast: 0 },
+          { do: 'constrain', terms: [{ cell: residual('a') }, { cell: residual('b') }], to: 1 }
+        ]
+      },
+      onePlace,
+      /binds bounded cells only/
     ],
     [
       'an unknown group of a change',

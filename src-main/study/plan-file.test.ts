@@ -85,6 +85,21 @@ candidates:
         at: -0.5
       - equal: { residual variance: [a, b] }
       - equal: { loading: [[a, F], [b, F]] }
+      - constrain:
+          - { loading: [b, F] }
+          - { loading: [d, G], times: -2 }
+        to: 0.5
+        group: north
+      - constrain:
+          - { intercept: b, times: 1, group: north }
+          - { intercept: b, times: -1, group: south }
+        to: 0
+      - bound: { residual variance: a }
+        at least: 0
+      - bound: { factor covariance: [F, G] }
+        at least: -1
+        at most: 1
+        group: south
 `
     expect(parsePlan(text, 'p').candidates[0]).toMatchObject({
       except: [
@@ -109,7 +124,27 @@ candidates:
             { part: 'loading', of: ['b', 'F'] }
           ],
           group: null
-        }
+        },
+        {
+          do: 'constrain',
+          terms: [
+            { cell: { part: 'loading', of: ['b', 'F'] }, times: 1, group: null },
+            { cell: { part: 'loading', of: ['d', 'G'] }, times: -2, group: null }
+          ],
+          to: 0.5,
+          group: 'north'
+        },
+        {
+          do: 'constrain',
+          terms: [
+            { cell: { part: 'intercept', of: ['b'] }, times: 1, group: 'north' },
+            { cell: { part: 'intercept', of: ['b'] }, times: -1, group: 'south' }
+          ],
+          to: 0,
+          group: null
+        },
+        { do: 'bound', cell: { part: 'residual variance', of: ['a'] }, atLeast: 0, atMost: null, group: null },
+        { do: 'bound', cell: { part: 'factor covariance', of: ['F', 'G'] }, atLeast: -1, atMost: 1, group: 'south' }
       ]
     })
   })
@@ -142,6 +177,21 @@ describe('writing a plan', () => {
   it('reads as a person would have written it', () => {
     expect(writePlan(fixture('congeneric'))).toContain(
       '      - fix: { factor covariance: [ Unhurried, Speeded ] }\n        at: 1\n'
+    )
+  })
+
+  it('keeps each term of a constraint on a line', () => {
+    const change = 'constrain: [{ loading: [b, F], times: 2 }, { loading: [c, F] }], to: 3'
+    const text = `${SMALL}  Two: { from: One, change: [{ ${change} }, { bound: { residual variance: a }, at least: 0 }] }\n`
+    expect(writePlan(parsePlan(text, 'p'))).toContain(
+      [
+        '      - constrain:',
+        '          - { loading: [ b, F ], times: 2 }',
+        '          - { loading: [ c, F ], times: 1 }',
+        '        to: 3',
+        '      - bound: { residual variance: a }',
+        '        at least: 0\n'
+      ].join('\n')
     )
   })
 
@@ -248,7 +298,18 @@ function anyPlan(): fc.Arbitrary<Plan> {
             { part: 'residual covariance', of: [c!, d!] }
           ],
           group
-        }
+        },
+        {
+          do: 'constrain',
+          terms: [
+            { cell: { part: 'loading', of: [b!, f!] }, times: draw.alpha, group },
+            { cell: { part: 'residual covariance', of: [b!, c!] }, times: -1, group }
+          ],
+          to: draw.finite,
+          group: null
+        },
+        { do: 'bound', cell: { part: 'residual variance', of: [d!] }, atLeast: null, atMost: draw.variance + 1, group },
+        { do: 'bound', cell: { part: 'factor variance', of: [g!] }, atLeast: 0, atMost: draw.variance + 1, group: null }
       ]
       return {
         study: one!,

@@ -1,14 +1,14 @@
 /**
- * Walks the table of broken input through reading the plan and loading its data.
+ * Walks the table of broken input through reading the plan, loading its data and making its models.
  */
 import { readFileSync } from 'node:fs'
 import fc from 'fast-check'
 import { describe, expect, it } from 'vitest'
 import { readDelimited } from '../../src-main/importing/delimited.ts'
 import { loadData } from '../../src-main/importing/load-data.ts'
+import { checkFamily } from '../../src-main/operations/family.ts'
 import { InputError } from '../../src-main/study/input-error.ts'
 import { parsePlan } from '../../src-main/study/plan-file.ts'
-import { checkPlanAgainstData } from '../../src-main/study/plan-references.ts'
 import { type BadInput, badInputs, soundInputs } from './cases.ts'
 
 function readStudy({ plan, files }: Pick<BadInput, 'plan' | 'files'>): void {
@@ -18,7 +18,7 @@ function readStudy({ plan, files }: Pick<BadInput, 'plan' | 'files'>): void {
     if (text === undefined) throw Object.assign(new Error(`no ${path}`), { code: 'ENOENT' })
     return new TextEncoder().encode(text)
   })
-  checkPlanAgainstData(parsed, data)
+  checkFamily(parsed, data)
 }
 
 function refusal(work: () => void): unknown {

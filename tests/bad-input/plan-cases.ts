@@ -180,7 +180,11 @@ const inCandidates: BadInput[] = [
 const change = (text: string): string => `  Bad:\n    from: Two\n    change:\n      - ${text}\n`
 
 const inChanges: BadInput[] = [
-  added('a change that says nothing', change('{ at: 0 }'), 'line 14, column 9: This change says neither free, fix nor equal.'),
+  added(
+    'a change that says nothing',
+    change('{ at: 0 }'),
+    'line 14, column 9: This change says neither free, fix, equal, constrain nor bound.'
+  ),
   added(
     'a mistyped change',
     change('fre: { loading: [a, G] }'),
@@ -261,6 +265,116 @@ const inChanges: BadInput[] = [
     'an equality of bare names',
     change('equal: { loading: [a, b] }'),
     'The names of a loading must be a list, but "a" stands here.'
+  ),
+  added(
+    'a mistyped kind of change',
+    change('{ constrane: [], to: 0 }'),
+    'line 14, column 11: Unknown key "constrane" in a change. The nearest known key is "constrain"'
+  ),
+  added(
+    'a constraint of one term',
+    change('{ constrain: [{ loading: [b, F] }], to: 1 }'),
+    'line 14, column 22: A constraint needs at least two terms.'
+  ),
+  added(
+    'a constraint that is no list',
+    change('{ constrain: { loading: [b, F] }, to: 1 }'),
+    'The terms of a constraint must be a list, but a mapping stands here.'
+  ),
+  added(
+    'a constraint without its sum',
+    change('constrain: [{ loading: [b, F] }, { loading: [d, G] }]'),
+    'line 14, column 9: A constraint needs the value that its terms sum to. Add "to: 0", say.'
+  ),
+  added(
+    'a mistyped key of a term',
+    change('{ constrain: [{ loading: [b, F], time: 2 }, { loading: [d, G] }], to: 0 }'),
+    'line 14, column 42: Unknown key "time" in a term. The nearest known key is "times"'
+  ),
+  added(
+    'a term taken no times',
+    change('{ constrain: [{ loading: [b, F], times: 0 }, { loading: [d, G] }], to: 0 }'),
+    'line 14, column 49: A cell taken 0 times constrains nothing.'
+  ),
+  added(
+    'a term taken a word of times',
+    change('{ constrain: [{ loading: [b, F], times: two }, { loading: [d, G] }], to: 0 }'),
+    'How many times a cell is taken must be a number, but "two" stands here.'
+  ),
+  added(
+    'a term of an unknown indicator',
+    change('{ constrain: [{ loading: [b, F] }, { loading: [e, G] }], to: 0 }'),
+    'line 14, column 9: There is no indicator "e".'
+  ),
+  added(
+    'a cell twice in a constraint',
+    change('{ constrain: [{ residual covariance: [a, c] }, { residual covariance: [c, a] }], to: 0 }'),
+    'The residual covariance of "c" and "a" stands twice in one constraint. Add the two up.'
+  ),
+  added(
+    'a constraint on a cell that is not in the model',
+    change('{ constrain: [{ loading: [a, G] }, { loading: [b, F] }], to: 0 }'),
+    'candidate "Bad": the loading of a on G is not in the model, so it cannot be constrained. Free it first.'
+  ),
+  added(
+    'a constraint on fixed cells only',
+    change('{ constrain: [{ loading: [a, F] }, { loading: [c, G] }], to: 2 }'),
+    'every cell of this constraint is fixed, so it constrains nothing.'
+  ),
+  added(
+    'constraints that contradict each other',
+    `${change('{ constrain: [{ loading: [b, F] }, { loading: [d, G], times: -1 }], to: 0 }')}      - { constrain: [{ loading: [b, F], times: 2 }, { loading: [d, G], times: -2 }], to: 1 }\n`,
+    'is 1 contradicts the fixed cells and constraints before it.'
+  ),
+  added(
+    'groups on some terms only',
+    `    across: site\n${change('{ constrain: [{ intercept: a, group: north }, { intercept: b }], to: 0 }')}`,
+    'Some terms of this constraint name a group and some do not.'
+  ),
+  added(
+    'groups on the terms and on the constraint',
+    `    across: site\n${change('{ constrain: [{ intercept: a, group: north }, { intercept: a, group: south }], to: 0, group: north }')}`,
+    'The constraint stands in "north", and its terms name groups too.'
+  ),
+  added(
+    'an unknown group of a term',
+    `    across: site\n${change('{ constrain: [{ intercept: a, group: north }, { intercept: a, group: sooth }], to: 0 }')}`,
+    'There is no group "sooth" in the data. Did you mean "south"?'
+  ),
+  added(
+    'a bound without a limit',
+    change('bound: { residual variance: a }'),
+    'line 14, column 9: A bounded cell needs its bound. Add "at least: 0", say.'
+  ),
+  added(
+    'a bound that is a word',
+    change('{ bound: { residual variance: a }, at least: zero }'),
+    'The bound "at least" must be a number, but "zero" stands here.'
+  ),
+  added(
+    'bounds the wrong way round',
+    change('{ bound: { residual variance: a }, at least: 2, at most: 1 }'),
+    'Nothing lies between at least 2 and at most 1. Exchange the two.'
+  ),
+  added(
+    'bounds that leave one value',
+    change('{ bound: { residual variance: a }, at least: 1, at most: 1 }'),
+    'Nothing lies between at least 1 and at most 1. Write "fix:" and "at: 1".'
+  ),
+  added(
+    'a variance bounded from above at nothing',
+    change('{ bound: { factor variance: F }, at most: 0 }'),
+    'A factor variance cannot be bounded at most at 0: a variance is never negative.'
+  ),
+  added(
+    'a bound of a fixed cell',
+    change('{ bound: { loading: [a, F] }, at least: 0 }'),
+    'candidate "Bad": the loading of a on F is fixed at 1, so it cannot be bounded. Free it first.'
+  ),
+  added(
+    'a bound of a change that is none',
+    change('{ free: { loading: [a, G] }, at most: 1 }'),
+    '"at most" goes with "bound", not with "free".'
   ),
   added(
     'a change in one group of a candidate that has none',

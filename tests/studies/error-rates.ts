@@ -15,9 +15,12 @@ import {
 import { chiSquareUpper } from '../../src-main/statistics/distributions/chi-square.ts'
 import { type Generator, seededGenerator } from '../../src-main/statistics/distributions/generator.ts'
 import { chiBarSquareUpper } from '../../src-main/statistics/distributions/mixtures.ts'
+import { missingScalingForms } from '../../src-main/statistics/estimation/scaling-missing.ts'
 import { fitModel } from '../../src-main/statistics/fit/fit.ts'
 import type { ModelCells } from '../../src-main/statistics/model/cells.ts'
+import { splitByPattern } from '../../src-main/statistics/moments/missing-patterns.ts'
 import { completeCaseMoments } from '../../src-main/statistics/moments/sample-moments.ts'
+import { saturatedMoments } from '../../src-main/statistics/moments/saturated-em.ts'
 import { candidateCells, resolveCandidate } from '../../src-main/study/candidate-model.ts'
 import { candidateSchema } from '../../src-main/study/study.ts'
 
@@ -150,6 +153,25 @@ const designs: { name: string; restricted: ModelCells; correlation: number; heav
   { name: 'correlation of 1, normal data', restricted: cells.one, correlation: 1, heavy: false, tests: boundaryTests }
 ]
 
+/** Takes 12% of the answers away at random, and fits the two-factor model, which is true, with full information. */
+function exactFitWithHoles(n: number, heavy: boolean, generator: Generator): Record<string, number | null> {
+  const values = draw(n, 0.4, heavy, generator).map((value) => (generator.uniform() < 0.12 ? Number.NaN : value))
+  const { patterns, n: cases } = splitByPattern(values, 6)
+  const { mean, covariance } = saturatedMoments(patterns, 6)
+  const moments = { indicators, groups: [{ name: null, n: cases, patterns, mean, covariance }] }
+  const { fit } = fitModel(cells.two, moments, { convention: 'normal', statistic: 'mean-scaled', standardErrors: 'observed' }, [
+    values
+  ])
+  if (fit.T === null) return { 'not scaled': null, 'at the model-implied moments': null, 'at the unrestricted estimates': null }
+  const scaled = fit.scaled
+  return {
+    'not scaled': fit.p,
+    'at the model-implied moments': scaled?.form === missingScalingForms.atModel ? scaled.p : null,
+    'at the unrestricted estimates':
+      scaled?.scalingAtUnrestricted == null ? null : chiSquareUpper(fit.T / scaled.scalingAtUnrestricted, fit.df)
+  }
+}
+
 console.log(`seed ${seed}, ${replications} replications a cell\n`)
 console.log('| population and data | N | test | rejected at .05 | standard errors from .05 | undefined |')
 console.log('| --- | --- | --- | --- | --- | --- |')
@@ -173,6 +195,32 @@ for (const { name, restricted, correlation, heavy, tests } of designs) {
       const rate = rejected / done
       const error = Math.sqrt((0.05 * 0.95) / done)
       console.log(`| ${name} | ${n} | ${test} | ${rate.toFixed(4)} | ${((rate - 0.05) / error).toFixed(1)} | ${missing} |`)
+    }
+  }
+}
+
+console.log('\nExact fit of a true model with 12% of the answers missing, Yuan & Bentler (2000) with both informations\n')
+console.log('| data | N | informations | rejected at .05 | standard errors from .05 | undefined |')
+console.log('| --- | --- | --- | --- | --- | --- |')
+for (const heavy of [false, true]) {
+  for (const n of sizes) {
+    const generator = seededGenerator(seed)
+    const counts = new Map<string, { rejected: number; done: number; missing: number }>()
+    for (let r = 0; r < replications; r++) {
+      for (const [form, p] of Object.entries(exactFitWithHoles(n, heavy, generator))) {
+        const count = counts.get(form) ?? { rejected: 0, done: 0, missing: 0 }
+        counts.set(form, count)
+        if (p === null) count.missing++
+        else count.done++
+        if (p !== null && p < 0.05) count.rejected++
+      }
+    }
+    for (const [form, { rejected, done, missing }] of counts) {
+      const rate = rejected / done
+      const error = Math.sqrt((0.05 * 0.95) / done)
+      console.log(
+        `| ${heavy ? 'heavy tails' : 'normal'} | ${n} | ${form} | ${rate.toFixed(4)} | ${((rate - 0.05) / error).toFixed(1)} | ${missing} |`
+      )
     }
   }
 }

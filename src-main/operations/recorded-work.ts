@@ -68,6 +68,7 @@ function watchedCrew(crew: Crew): WatchedCrew {
         return outcome
       },
       restrictedScaling: (job, signal) => crew.restrictedScaling(job, signal),
+      resample: (job, signal) => crew.resample(job, signal),
       scoreTests: (job, signal) => crew.scoreTests(job, signal),
       close: () => crew.close()
     }

@@ -6,12 +6,14 @@ import { relationOf } from '../statistics/comparison/relation.ts'
 import { scalingAtRestricted } from '../statistics/comparison/scaled-difference.ts'
 import { scoreTests } from '../statistics/estimation/score-tests.ts'
 import { fitModel } from '../statistics/fit/fit.ts'
+import { resampleLadder } from '../statistics/resampling/ladder-resamples.ts'
 import type { Crew, Job, Outcome } from './jobs.ts'
 
 export const inlineCrew: Crew = {
   fit: done,
   relation: done,
   restrictedScaling: done,
+  resample: done,
   scoreTests: done,
   async close() {}
 }
@@ -30,6 +32,8 @@ export function doJob(job: Job): Outcome {
       return relationOf(job)
     case 'restricted scaling':
       return scalingAtRestricted(job)
+    case 'resample':
+      return resampleLadder(job, scalingAtRestricted)
     case 'score tests':
       return scoreTests(job.cells, job.moments, job.settings.convention, job.gamma)
   }

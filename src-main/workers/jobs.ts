@@ -9,6 +9,7 @@ import type { FitOutcome } from '../statistics/fit/fit-result.ts'
 import type { FitSettings } from '../statistics/fit/settings.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
 import type { SampleMoments } from '../statistics/moments/sample-moments.ts'
+import type { ResampleInput, ResampleOutcome } from '../statistics/resampling/ladder-resamples.ts'
 
 export interface FitJob {
   kind: 'fit'
@@ -39,14 +40,20 @@ export interface RestrictedScalingJob extends ScalingAtRestrictedInput {
   kind: 'restricted scaling'
 }
 
-export type Job = RestrictedScalingJob | FitJob | RelationJob | ScoreJob
-export type Outcome = number | null | FitOutcome | RelationOutcome | ScoreTests
+/** The rungs of a ladder on a run of resamples. */
+export interface ResampleJob extends ResampleInput {
+  kind: 'resample'
+}
+
+export type Job = ResampleJob | RestrictedScalingJob | FitJob | RelationJob | ScoreJob
+export type Outcome = ResampleOutcome | number | null | FitOutcome | RelationOutcome | ScoreTests
 
 /** Runs jobs, off the calling thread where it can. A job rejects only on a bug or when `signal` aborts. */
 export interface Crew {
   fit(job: FitJob, signal?: AbortSignal): Promise<FitOutcome>
   relation(job: RelationJob, signal?: AbortSignal): Promise<RelationOutcome>
   restrictedScaling(job: RestrictedScalingJob, signal?: AbortSignal): Promise<number | null>
+  resample(job: ResampleJob, signal?: AbortSignal): Promise<ResampleOutcome>
   scoreTests(job: ScoreJob, signal?: AbortSignal): Promise<ScoreTests>
   close(): Promise<void>
 }

@@ -31,6 +31,7 @@ export function createPool(options: PoolOptions): Crew {
     fit: (job, signal) => run(pool, job, signal),
     relation: (job, signal) => run(pool, job, signal),
     restrictedScaling: (job, signal) => run(pool, job, signal),
+    resample: (job, signal) => run(pool, job, signal),
     scoreTests: (job, signal) => run(pool, job, signal),
     close: () => pool.destroy()
   }

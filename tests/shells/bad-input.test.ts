@@ -15,6 +15,7 @@ const unwilling: Crew = {
   fit: () => Promise.reject(new Error('asked to fit bad input')),
   relation: () => Promise.reject(new Error('asked to compare bad input')),
   restrictedScaling: () => Promise.reject(new Error('asked to scale bad input')),
+  resample: () => Promise.reject(new Error('asked to resample bad input')),
   scoreTests: () => Promise.reject(new Error('asked to test bad input')),
   close: async () => {}
 }

@@ -156,6 +156,7 @@ function endlessCrew(onFirst: () => void): Crew {
     fit: (_job, signal) => wait(signal),
     relation: (_job, signal) => wait(signal),
     restrictedScaling: (_job, signal) => wait(signal),
+    resample: (_job, signal) => wait(signal),
     scoreTests: (_job, signal) => wait(signal),
     close: async () => {}
   }

@@ -5,8 +5,8 @@
  * no feature can live in one of them only. Inputs are validated by the operation's own schema on the other side.
  */
 
-import type { FitState, StudyResult } from '../study/result.ts'
-import type { Candidate, Caution, CellPart, Estimation, LadderPlan, Origin, Rules } from '../study/study.ts'
+import type { FitState, StudyResult, Verdict } from '../study/result.ts'
+import type { Candidate, Caution, CellPart, Estimation, LadderPlan, Origin, Release, Rules } from '../study/study.ts'
 
 export type * from '../study/result.ts'
 export type * from '../study/study.ts'
@@ -157,6 +157,112 @@ export interface ScoreTestView {
   plausibility: 'stated' | 'near' | 'far'
 }
 
+/** One group's cell that a failed step ties to the other groups', in one round of the search. */
+export interface ReleaseTestView {
+  part: CellPart
+  of: string[]
+  group: string
+  /** The cell in words. */
+  words: string
+  /** Expected drop in T when it is let go, on one degree of freedom, and its p. */
+  statistic: number
+  p: number
+  /** Adjusted (Holm) over those of the round that may be let go; null for one that may not. */
+  holmP: number | null
+  /** Expected distance from the other groups' value, raw and completely standardised. */
+  change: number
+  standardizedChange: number | null
+  /** Why it may not be let go; null when it may. */
+  kept: string | null
+}
+
+/** One round: every equality that the step added tested by itself, one let go, the model fitted again. */
+export interface ReleaseRoundView {
+  /** Largest statistic first. */
+  tests: ReleaseTestView[]
+  /** The one let go, and the candidate that was made without it; null when the round let go none. */
+  released: ReleaseTestView | null
+  candidate: string | null
+  /** The step from the lower rung to that candidate, judged by the study's rules on the ladder as it then stands. */
+  verdict: Verdict | null
+  sentence: string
+}
+
+/** The search for equalities that a failed step should not have asked for: found after seeing the results, and marked so. */
+export interface ReleaseSearchView {
+  ladder: string
+  /** The rungs below and above the step. */
+  from: string
+  to: string
+  /** The rule in words, for a paper. */
+  rule: string
+  rounds: ReleaseRoundView[]
+  /** Everything let go, in order. */
+  released: ReleaseTestView[]
+  ended: 'the step holds' | 'nothing significant is left' | 'nothing more may be let go' | 'no solution' | 'stopped'
+  /** Name of the ladder on which the partial rungs stand; null when nothing was let go. */
+  partialLadder: string | null
+  /** Name of the ladder that climbs on from there, with the same let go on the rungs above; null where there is none. */
+  onwardLadder: string | null
+  /** Whether the search finds the same with other reference indicators; null when it was stopped before. */
+  otherReference: { agrees: boolean | null; released: string[]; sentence: string } | null
+  sentence: string
+}
+
+/** How much it matters that an indicator is not measured alike in two groups (Nye & Drasgow 2011). Differences are reference minus focal. */
+export interface EffectSizeView {
+  indicator: string
+  reference: string
+  focal: string
+  interceptDifference: number
+  loadingDifferences: { factor: string; difference: number }[]
+  /** SD pooled as the mean of both SDs, weighted by n - 1; null where the focal factor variances are improper. */
+  dmacs: number | null
+  /** The same over the root of the pooled variance. */
+  dmacsPooledVariance: number | null
+  /** The expected difference over the pooled SD, with its sign. */
+  signed: number
+  /** On the indicator's own scale, over the focal group's members. */
+  expectedDifference: number
+  rootMeanSquare: number | null
+  pooledSd: number
+  sentence: string
+}
+
+/** An estimate with its standard error and 95% interval; null where no standard error could be computed. */
+export interface DifferenceView {
+  estimate: number
+  standardError: number | null
+  lower: number | null
+  upper: number | null
+  z: number | null
+  p: number | null
+}
+
+/** The difference of a factor's mean in `group` from that in `from`. */
+export interface LatentMeanView {
+  factor: string
+  from: string
+  group: string
+  raw: DifferenceView
+  /** In factor standard deviations, pooled over the two groups; null where the pooled variance is not positive. */
+  standardised: DifferenceView | null
+  pooledSd: number | null
+  /** Indicators that both groups have in common: what the comparison rests on. */
+  restsOn: string[]
+  /** The same with everything that was let go held equal; null when nothing was let go or that model has no solution. */
+  allHeld: { raw: DifferenceView; standardised: DifferenceView | null } | null
+  sentence: string
+}
+
+/** A factor whose means cannot be compared in a pair of groups, and why. */
+export interface RefusedComparison {
+  factor: string
+  from: string
+  group: string
+  reason: string
+}
+
 /** Every call: its input and its result. A call without input takes `null`. */
 export interface Operations {
   currentStudy: { input: null; result: StudyView | null }
@@ -187,6 +293,20 @@ export interface Operations {
   cancelWork: { input: null; result: null }
   /** Score tests of a fitted candidate, plausible releases first. */
   scoreTests: { input: { candidate: string }; result: { tests: ScoreTestView[]; leftOut: number } }
+  /** Derives a candidate from any other, generated ones included, with these cells let go from their equality across groups. */
+  releaseByHand: { input: { candidate: string; releases: Release[] }; result: StudyView }
+  /** Searches, by the stated rule, what to let go so that the step to `rung` holds; each release becomes a candidate, fitted and recorded. */
+  releaseSearch: { input: { ladder: string; rung: string }; result: { search: ReleaseSearchView; view: StudyView } }
+  /** Refused below the rung that licenses it: some intercepts must be held equal. */
+  effectSizes: {
+    input: { candidate: string }
+    result: { sizes: EffectSizeView[]; refused: RefusedComparison[]; sentence: string }
+  }
+  /** Refused likewise. */
+  latentMeans: {
+    input: { candidate: string }
+    result: { differences: LatentMeanView[]; refused: RefusedComparison[]; sentence: string }
+  }
   recordDecision: { input: { ladder: string; rung: string; reason: string }; result: StudyView }
   saveProject: { input: { path: string }; result: StudyView }
   exportPlan: { input: { path: string }; result: { path: string } }

@@ -5,15 +5,18 @@
  */
 import { z } from 'zod'
 import { InputError } from '../study/input-error.ts'
-import { candidateSchema, estimationSchema, ladderPlanSchema, rulesSchema } from '../study/study.ts'
+import { candidateSchema, estimationSchema, ladderPlanSchema, releaseSchema, rulesSchema } from '../study/study.ts'
 import { Bench, type BenchParts } from './bench.ts'
 import { listFolder, previewData } from './browse.ts'
 import { addCandidate, addLadder, changeRules } from './change-study.ts'
 import { checkCandidate } from './check-candidate.ts'
 import type { Answer, OperationName, Operations, WorkEvent } from './contract.ts'
+import { effectSizes } from './effect-sizes.ts'
 import { cancelWork, fitCandidates } from './fit-candidates.ts'
+import { latentMeans } from './latent-means.ts'
 import { currentStudy, newStudy, openPlan, openProject, openSample } from './open-study.ts'
 import { recordDecision } from './record-decision.ts'
+import { releaseByHand, releaseSearch } from './release-search.ts'
 import { exportPlan, exportResult, saveProject } from './save-and-export.ts'
 import { scoreTests } from './score-tests.ts'
 
@@ -70,6 +73,13 @@ const operations: { readonly [N in OperationName]: Operation<N> } = {
   fitCandidates: { input: z.strictObject({ names: z.array(words).nullable() }), run: fitCandidates },
   cancelWork: { input: nothing, run: cancelWork },
   scoreTests: { input: z.strictObject({ candidate: words }), run: scoreTests },
+  releaseByHand: {
+    input: z.strictObject({ candidate: words, releases: z.array(releaseSchema).min(1) }),
+    run: releaseByHand
+  },
+  releaseSearch: { input: z.strictObject({ ladder: words, rung: words }), run: releaseSearch },
+  effectSizes: { input: z.strictObject({ candidate: words }), run: effectSizes },
+  latentMeans: { input: z.strictObject({ candidate: words }), run: latentMeans },
   recordDecision: { input: z.strictObject({ ladder: words, rung: words, reason: words }), run: recordDecision },
   saveProject: { input: path, run: saveProject },
   exportPlan: { input: path, run: exportPlan },

@@ -135,6 +135,158 @@ describe('the three scalings', () => {
   })
 })
 
+describe('the three scalings by group, with parts of the model let go or bound', () => {
+  const example = readExample('01d_simulated_two_factor_invariance.json')
+  const moments = exampleMoments(example)
+  const y = moments.indicators
+  const last = moments.groups.at(-1)!.name
+  /** Groups that are compared with the first. */
+  const further = moments.groups.length - 1
+  const factors = [
+    { name: 'A', measures: y.slice(0, 3) },
+    { name: 'B', measures: y.slice(3, 6) }
+  ]
+  const loading = (i: number, factor: string) => ({ part: 'loading', of: [y[i]!, factor] })
+  const intercept = (i: number) => ({ part: 'intercept', of: [y[i]!] })
+  const metric = { across: 'group', equalAcrossGroups: ['loadings'] }
+  const scalar = { across: 'group', equalAcrossGroups: ['loadings', 'intercepts'] }
+  const fits = (rest: object, all = factors) =>
+    fitAll([candidateSchema.parse({ name: 'own', factors: all, ...rest })], 'own', moments)
+  const [equalLoadings, equalIntercepts] = [example.expected['equal_loadings']!, example.expected['equal_loadings_intercepts']!]
+
+  for (const [i, factor] of [
+    [0, 'A'],
+    [1, 'A'],
+    [5, 'B']
+  ] as const) {
+    it(`give one T where all loadings but that of ${y[i]} are equal, with fewer df and a smaller T than where all are`, () => {
+      const released = fits({ ...metric, except: [{ cell: loading(i, factor) }] })
+      agree(released, null, equalLoadings.df - further)
+      expect(released[0]!.T).toBeLessThan(equalLoadings.T)
+    })
+
+    it(`give one T where all intercepts but that of ${y[i]} are equal, with fewer df and a smaller T than where all are`, () => {
+      const released = fits({ ...scalar, except: [{ cell: intercept(i) }] })
+      agree(released, null, equalIntercepts.df - further)
+      expect(released[0]!.T).toBeLessThan(equalIntercepts.T)
+    })
+  }
+
+  it('give one T where a loading and its intercept are let go in one group', () => {
+    const except = [loading(1, 'A'), intercept(1)].map((cell) => ({ cell, group: last }))
+    agree(fits({ ...scalar, except }), null, equalIntercepts.df - 2)
+  })
+
+  it('give one T where all but two loadings of each factor differ, the fewest that can be compared', () => {
+    agree(fits({ ...metric, except: [{ cell: loading(2, 'A') }, { cell: loading(5, 'B') }] }), null, equalLoadings.df - 2 * further)
+  })
+
+  it('give one T where one loading is a multiple of another, in every group', () => {
+    const constrain = { do: 'constrain', terms: [{ cell: loading(1, 'A') }, { cell: loading(2, 'A'), times: -1.5 }], to: 0 }
+    agree(fits({ ...metric, change: [constrain] }), null, equalLoadings.df + 1)
+    agree(fits({ across: 'group', change: [constrain] }), null, example.expected['configural']!.df + 1 + further)
+  })
+
+  it('give one T where residual variances obey an equation across groups', () => {
+    const cell = { part: 'residual variance', of: [y[0]!] }
+    const [one, two] = moments.groups.map((g) => g.name)
+    const terms = [
+      { cell, group: one },
+      { cell, times: -2, group: two }
+    ]
+    const change = [{ do: 'constrain', terms, to: 0.1 }]
+    const constrained = fits({ ...metric, change })
+    agree(constrained, null, equalLoadings.df + 1)
+    for (const fit of constrained) {
+      const [first, second] = fit.estimates.filter((e) => e.part === 'residual variance' && e.of[0] === y[0])
+      expect(first!.estimate! - 2 * second!.estimate!).toBeCloseTo(0.1, 10)
+      expect(first!.standardError! / second!.standardError!).toBeCloseTo(2, 8)
+    }
+  })
+
+  it('give one T where a structural path stands in the place of the covariance, equal across groups or not', () => {
+    const path = { do: 'free', cell: { part: 'factor regression', of: ['B', 'A'] } }
+    agree(
+      fits({ across: 'group', equalAcrossGroups: [], change: [path] }),
+      example.expected['configural']!.T,
+      example.expected['configural']!.df
+    )
+    const held = fits({ ...metric, change: [path] })
+    // With loadings the path is held equal too, in the metric that the first group's scaling sets.
+    agree(held, null, equalLoadings.df + further)
+  })
+
+  it('keep a cell fixed at a number that is not zero, in every group', () => {
+    const cell = { part: 'residual covariance', of: [y[0]!, y[3]!] }
+    const fixed = fits({ ...scalar, change: [{ do: 'fix', cell, at: 0.05 }] })
+    agree(fixed, null, equalIntercepts.df)
+    for (const fit of fixed) {
+      const cells = fit.estimates.filter((e) => e.part === 'residual covariance')
+      expect(cells.map((e) => [e.free, e.estimate, e.standardError])).toEqual(moments.groups.map(() => [false, 0.05, null]))
+    }
+  })
+})
+
+describe('the three scalings of a second-order factor by group', () => {
+  const moments = drawSecondOrder([400, 300], seededGenerator(5))
+  const y = moments.indicators
+  const base = candidateSchema.parse({
+    name: 'base',
+    factors: [
+      ...[0, 1, 2].map((k) => ({ name: `F${k + 1}`, measures: y.slice(3 * k, 3 * k + 3) })),
+      { name: 'General', measures: ['F1', 'F2', 'F3'] }
+    ]
+  })
+  const family = [base, ...ladderCandidates({ name: 'l', invarianceOf: 'base', across: 'group', through: 'strict' }, [base])]
+  const partial = (level: string, rest: object) => {
+    const own = candidateSchema.parse({ name: 'own', from: `base, ${level}`, ...rest })
+    return fitAll([...family, own], 'own', moments)
+  }
+  /** Metric holds 6 loadings and 2 of the second order, scalar 9 intercepts less 3 means, strict 9 residual variances. */
+  const df = { configural: 48, metric: 56, scalar: 62, strict: 71 }
+
+  for (const level of invarianceLevels) {
+    it(`give one T at the ${level} step`, () => {
+      agree(fitAll(family, `base, ${level}`, moments), null, df[level])
+    })
+  }
+
+  it('give one T with a loading of the second order let go, or its first, which no longer carries the scale', () => {
+    for (const of of [
+      ['F1', 'General'],
+      ['F2', 'General']
+    ])
+      agree(partial('metric', { except: [{ cell: { part: 'factor regression', of } }] }), null, df.metric - 1)
+  })
+
+  // An intercept held where its loading is not would depend on where the factor's zero is put, so both are let go.
+  it('give one T with a loading and its intercept, and another intercept, let go', () => {
+    const cells = [
+      { part: 'loading', of: ['y1', 'F1'] },
+      { part: 'intercept', of: ['y1'] },
+      { part: 'intercept', of: ['y5'] }
+    ]
+    agree(partial('scalar', { except: cells.map((cell) => ({ cell })) }), null, df.scalar - 3)
+  })
+
+  it('keep the loadings of the second order in proportion, whose meaning is that of the scaling', () => {
+    const terms = [
+      { cell: { part: 'factor regression', of: ['F2', 'General'] } },
+      { cell: { part: 'factor regression', of: ['F3', 'General'] }, times: -0.8 }
+    ]
+    for (const fit of partial('metric', { change: [{ do: 'constrain', terms, to: 0 }] })) {
+      expect(fit.df).toBe(df.metric + 1)
+      const [two, three] = ['F2', 'F3'].map((name) =>
+        fit.estimates.filter((e) => e.part === 'factor regression' && e.of[0] === name)
+      )
+      two!.forEach((one, g) => {
+        expect(one.estimate).toBeCloseTo(0.8 * three![g]!.estimate!, 10)
+        expect(one.standardError).toBeCloseTo(0.8 * three![g]!.standardError!, 10)
+      })
+    }
+  })
+})
+
 /** Nine indicators of a general and three specific factors, with loadings far from proportional. */
 function drawBifactor(n: number, generator: Generator): SampleMoments {
   const general = [0.8, 0.6, 0.5, 0.7, 0.8, 0.4, 0.5, 0.7, 0.8]
@@ -149,4 +301,20 @@ function drawBifactor(n: number, generator: Generator): SampleMoments {
     }
   }
   return { indicators: general.map((_, i) => `y${i + 1}`), groups: [{ name: null, ...completeCaseMoments(values, 9) }] }
+}
+
+/** Nine indicators of three factors, which a general one explains in part; the second group differs in means and variances. */
+function drawSecondOrder(sizes: number[], generator: Generator): SampleMoments {
+  const loadings = [0.8, 0.6, 0.7, 0.9, 0.7, 0.6, 0.8, 0.7, 0.5]
+  const general = [0.8, 0.7, 0.6]
+  const groups = sizes.map((n, g) => {
+    const values = new Float64Array(n * 9)
+    for (let row = 0; row < n; row++) {
+      const top = (1 + 0.2 * g) * generator.normal()
+      const factors = general.map((weight) => weight * top + 0.6 * generator.normal() + 0.3 * g)
+      for (let i = 0; i < 9; i++) values[row * 9 + i] = 0.5 + loadings[i]! * factors[Math.floor(i / 3)]! + 0.6 * generator.normal()
+    }
+    return { name: g === 0 ? 'one' : 'two', ...completeCaseMoments(values, 9) }
+  })
+  return { indicators: loadings.map((_, i) => `y${i + 1}`), groups }
 }

@@ -8,8 +8,8 @@ import type { StudyResult } from '../../src-main/study/result.ts'
 import { readExample } from '../reference/examples.ts'
 import { root, rungwise } from './program.ts'
 
-async function compare(plan: string): Promise<StudyResult> {
-  const { status, stdout, stderr } = await rungwise(['compare', join(root, 'fixtures', plan, 'plan.yaml'), '--json', '-'])
+async function compare(folder: string, plan = 'plan.yaml'): Promise<StudyResult> {
+  const { status, stdout, stderr } = await rungwise(['compare', join(root, 'fixtures', folder, plan), '--json', '-'])
   expect(stderr).toBe('')
   expect(status).toBe(0)
   return JSON.parse(stdout) as StudyResult
@@ -115,3 +115,59 @@ for (const [folder, file] of [
     })
   })
 }
+
+interface Scaled {
+  SB2001: { c_d: number; T_d: number; df: number; p: number }
+}
+
+test('the ladder of scaled differences is that of 02f (Satorra & Bentler 2001), simulated data', async () => {
+  const { expected } = readExample<{ expected: { differences: Record<string, Scaled> } }>(
+    '02f_simulated_scaled_difference_ladder.json'
+  )
+  const [ladder] = (await compare('two-factors', 'scaled.yaml')).ladders
+  ladder!.steps.forEach(({ difference }, i) => {
+    const { c_d, T_d, df, p } = expected.differences[`${levels[i + 1]}_vs_${levels[i]}`]!.SB2001
+    expect(difference).toMatchObject({ method: 'scaled', df })
+    expect(Math.abs(difference!.scaling! - c_d)).toBeLessThan(1e-6)
+    expect(Math.abs(difference!.T - T_d)).toBeLessThan(1e-5)
+    expect(Math.abs(difference!.p - p)).toBeLessThan(1e-6)
+  })
+})
+
+test('ratings of judges (Hartigan 1977): the smallest minimum with its negative variance told, a bound that costs, and a mixture at the boundary', async () => {
+  const result = await compare('judges')
+  const two = candidate(result, 'Two factors')
+  // Figures of 02e: T = 48.669502 on 8 df, c = 1.278057; one factor 118.831140 on 9 df.
+  expect(two.T).toBeCloseTo(48.669502, 5)
+  expect(two.scaled!.scaling).toBeCloseTo(1.278057, 5)
+  expect(two.cautions.map((c) => [c.code, c.cell])).toContainEqual(['negative-residual-variance', ['PREP']])
+  expect(candidate(result, 'Two factors, bounded').T!).toBeGreaterThan(two.T!)
+  const { difference, because } = step(result, 'Factors', 'One factor')
+  const { SB2001 } = readExample<{ expected: Record<string, Scaled> }>('02e_judges_hard_case_heywood.json').expected[
+    'difference_one_factor_vs_two_factor'
+  ]!
+  expect(difference!.T).toBeCloseTo(SB2001.T_d, 4)
+  expect(difference!.method).toBe('boundary mixture')
+  expect(Math.abs(difference!.p / (SB2001.p / 2) - 1)).toBeLessThan(1e-5)
+  expect(because).toContain('correlation at 1')
+})
+
+test('missing answers: air quality (03a) and three groups (03b) by full information', async () => {
+  const air = candidate(await compare('air-quality'), 'One factor')
+  expect(air.T).toBeCloseTo(6.195589, 5)
+  expect(air.standardErrors).toBe('observed')
+  expect(air.scaled!.scaling).toBeCloseTo(1.01425, 5)
+  const groups = await compare('two-factors', 'missing.yaml')
+  const [ladder] = groups.ladders
+  expect(ladder!.rungs.map((rung) => Number(candidate(groups, rung).T!.toFixed(4)))).toEqual([18.9768, 34.2083, 39.6073])
+  expect(ladder!.steps.map((s) => Number(s.difference!.T.toFixed(4)))).toEqual([15.2315, 5.3991])
+  expect(groups.data.missing.cases).toBeGreaterThan(0)
+})
+
+test('two structures that are not nested get no chi-square difference', async () => {
+  const result = await compare('judges', 'not-nested.yaml')
+  const { difference, verdict, relation, noTest, deltaAic } = step(result, 'Side by side', 'Structure B')
+  expect([difference, verdict, relation, noTest]).toEqual([null, 'no test', 'not nested', 'not nested'])
+  // 09a: AIC of A less that of B is -42.20.
+  expect(deltaAic).toBeCloseTo(42.201, 3)
+})

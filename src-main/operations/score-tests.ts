@@ -1,7 +1,12 @@
 /**
  * What releasing a cell of a fitted candidate would do. Exploratory by nature: it looks at the results.
  */
+import { equation } from '../statistics/estimation/score-tests-releases.ts'
+import { labelWords } from '../statistics/fit/label-words.ts'
 import { cellWords } from '../statistics/model/cell-words.ts'
+import type { ModelCells } from '../statistics/model/cells.ts'
+import { compileModel } from '../statistics/model/compile.ts'
+import { equationWords } from '../study/change-words.ts'
 import { InputError } from '../study/input-error.ts'
 import type { Bench } from './bench.ts'
 import type { Operations } from './contract.ts'
@@ -34,7 +39,16 @@ export async function scoreTests(bench: Bench, { candidate }: ScoreTests['input'
     leftOut: untested.length,
     tests: tests.map(({ df: _df, exploratory: _exploratory, residualCorrelationChange: _other, ...test }) => ({
       ...test,
-      words: test.kind === 'constraint' ? `the equation ${test.label}` : cellWords(test.part, test.of, test.group)
+      words: test.kind === 'constraint' ? constraintWords(cells, test.label ?? '') : cellWords(test.part, test.of, test.group)
     }))
   }
+}
+
+/** The equation with cells in place of labels: "the loading of a on F plus the loading of b on F is 2". */
+function constraintWords(cells: ModelCells, text: string): string {
+  const constraint = cells.constraints.find((one) => equation(one) === text)
+  if (constraint === undefined) return `the equation ${text}`
+  const model = compileModel(cells)
+  const terms = constraint.terms.map(({ label, weight }) => ({ times: weight, words: labelWords(model, label) }))
+  return `${equationWords(terms, constraint.equals)}`
 }

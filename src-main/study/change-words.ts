@@ -2,7 +2,7 @@
  * One change of a candidate in words: a clause for sentences about candidates and about what is wrong with one.
  */
 import { cellWords, listed } from '../statistics/model/cell-words.ts'
-import type { CellName, Change, ConstraintTerm } from './study.ts'
+import type { CellName, Change } from './study.ts'
 
 /** One change as a clause: "the residual covariance of a with b is free". */
 export function changeWords(change: Change): string {
@@ -65,25 +65,24 @@ export function limitWords(atLeast: number | null, atMost: number | null): strin
 
 export type Constraint = Extract<Change, { do: 'constrain' }>
 
-/** "the loading of a on F equals twice the loading of b on F"; beyond two opposite terms, "a plus 3 times b is 2". */
 export function constraintWords({ terms, to, group }: Constraint): string {
-  const where = group === null ? '' : ` in ${group}`
-  const [first, second] = terms
-  if (terms.length === 2 && to === 0 && first!.times * second!.times < 0) {
-    const [one, many] = Math.abs(first!.times) <= Math.abs(second!.times) ? [first!, second!] : [second!, first!]
-    // The cell taken less often is the larger: one x a = many x b.
-    const ratio = Math.abs(many.times / one.times)
-    return `${termCell(one)} equals ${timesWords(ratio)}${termCell(many)}${where}`
-  }
-  const sum = terms.map((term, i) => {
-    const sign = i === 0 ? (term.times < 0 ? 'minus ' : '') : term.times < 0 ? ' minus ' : ' plus '
-    return `${sign}${timesWords(Math.abs(term.times))}${termCell(term)}`
-  })
-  return `${sum.join('')} is ${to}${where}`
+  const words = terms.map(({ cell, times, group: own }) => ({ times, words: cellWords(cell.part, cell.of, own) }))
+  return `${equationWords(words, to)}${group === null ? '' : ` in ${group}`}`
 }
 
-function termCell({ cell, group }: ConstraintTerm): string {
-  return cellWords(cell.part, cell.of, group)
+/** "the loading of a on F equals twice the loading of b on F"; beyond two opposite terms, "a plus 3 times b is 2". */
+export function equationWords(terms: readonly { times: number; words: string }[], to: number): string {
+  const [first, second] = terms
+  if (terms.length === 2 && to === 0 && first!.times * second!.times < 0) {
+    // The one taken less often is the larger: one x a = many x b.
+    const [one, many] = Math.abs(first!.times) <= Math.abs(second!.times) ? [first!, second!] : [second!, first!]
+    return `${one.words} equals ${timesWords(Math.abs(many.times / one.times))}${many.words}`
+  }
+  const sum = terms.map(({ times, words }, i) => {
+    const sign = i === 0 ? (times < 0 ? 'minus ' : '') : times < 0 ? ' minus ' : ' plus '
+    return `${sign}${timesWords(Math.abs(times))}${words}`
+  })
+  return `${sum.join('')} is ${to}`
 }
 
 function timesWords(times: number): string {

@@ -121,7 +121,7 @@ function constraintReleases(model: CompiledModel, constraints: readonly LinearCo
 }
 
 /** "a + 2 b - c = 3" */
-function equation({ terms, equals }: LinearConstraint): string {
+export function equation({ terms, equals }: LinearConstraint): string {
   const left = terms.map(({ label, weight }, i) => {
     const sign = weight < 0 ? (i === 0 ? '-' : ' - ') : i === 0 ? '' : ' + '
     const size = Math.abs(weight)

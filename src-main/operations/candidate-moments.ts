@@ -22,12 +22,16 @@ export interface CandidateSample {
 
 export type SampleSource = (byGroup: boolean, indicators: readonly string[]) => CandidateSample
 
-/** Samples of one data set under one estimation; each is made once and shared by the candidates that use it. */
-export function sampleSource(data: DataSet, estimation: Pick<Estimation, 'convention' | 'missing'>): SampleSource {
-  const made = new Map<string, CandidateSample>()
+/** By data set, then by estimation, groups and indicators: the window asks for the same samples with every call. */
+const samples = new WeakMap<DataSet, Map<string, CandidateSample>>()
+
+/** Samples of one data set under one estimation; each is made once and shared by all that use it. */
+export function sampleSource(data: DataSet, { convention, missing }: Pick<Estimation, 'convention' | 'missing'>): SampleSource {
+  const made = samples.get(data) ?? new Map<string, CandidateSample>()
+  samples.set(data, made)
   return (byGroup, indicators) => {
-    const key = JSON.stringify([byGroup, indicators])
-    const sample = made.get(key) ?? makeSample(data, estimation, byGroup, indicators)
+    const key = JSON.stringify([convention, missing, byGroup, indicators])
+    const sample = made.get(key) ?? makeSample(data, { convention, missing }, byGroup, indicators)
     made.set(key, sample)
     return sample
   }

@@ -7,16 +7,21 @@ import { splitByPattern } from '../statistics/moments/missing-patterns.ts'
 import type { MissingResult, NormalityResult, StudyResult } from '../study/result.ts'
 import type { Caution, DataSet, Estimation } from '../study/study.ts'
 
+type Counts = Pick<StudyResult['data'], 'groups' | 'missing' | 'normality'>
+
+/** Counted once a data set: the window shows them with every call. */
+const counts = new WeakMap<DataSet, Counts>()
+
 export function dataSummary(data: DataSet, estimation: Estimation): StudyResult['data'] {
-  const missing = missingAnswers(data)
-  return {
-    digest: data.digest,
-    indicators: data.indicators,
-    groups: completeCases(data),
-    missing,
-    normality: normality(data),
-    cautions: [...data.cautions, ...missingCautions(missing, estimation)]
-  }
+  const { groups, missing, normality } = counts.get(data) ?? countsOf(data)
+  const cautions = [...data.cautions, ...missingCautions(missing, estimation)]
+  return { digest: data.digest, indicators: data.indicators, groups, missing, normality, cautions }
+}
+
+function countsOf(data: DataSet): Counts {
+  const made = { groups: completeCases(data), missing: missingAnswers(data), normality: normality(data) }
+  counts.set(data, made)
+  return made
 }
 
 /** Per group: rows (or published n), and those without a missing answer. */

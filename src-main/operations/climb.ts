@@ -80,6 +80,9 @@ async function ladderStep(from: string, to: string, input: ClimbInput, crew: Cre
     sizes: general.sample.moments.groups.map((g) => g.n),
     addsLoadings: upperCandidate.equal.includes('loadings') && !lowerCandidate.equal.includes('loadings')
   }
+  if (relation?.relation === 'not nested' && lower?.state === 'fitted' && upper?.state === 'fitted') {
+    ground.notNested = await casewiseTests(general, restricted, input.memory, crew, signal)
+  }
   if (relation?.relation !== 'nested' || lower?.state !== 'fitted' || upper?.state !== 'fitted') return { ground, boundary: null }
   const found = boundaryOf(general.cells, restricted.cells, lowerCandidate, upperCandidate)
   const boundary = found === null ? null : stepBoundary(found, general, upper.df - lower.df, input)
@@ -129,6 +132,24 @@ async function scalingAtUpper(
   const { moments, rows } = lower.sample
   if (pair === null || rows === null) return null
   return crew.restrictedScaling({ kind: 'restricted scaling', ...pair, moments, rows }, signal)
+}
+
+/** The casewise tests of a pair that is not nested, the upper rung as the first model. Remembered by both digests. */
+async function casewiseTests(
+  lower: Entry,
+  upper: Entry,
+  { fits, notNested: known }: StudyMemory,
+  crew: Crew,
+  signal?: AbortSignal
+): Promise<NonNullable<StepGround['notNested']>> {
+  const { moments, rows } = lower.sample
+  const [first, second] = [upper, lower].map(({ cells, digest }) => ({ cells, gamma: fits.get(digest)!.gamma! }))
+  if (rows === null) return 'no rows'
+  const digest = digestOf({ first: upper.digest, second: lower.digest })
+  const tests =
+    known?.get(digest) ?? (await crew.notNested({ kind: 'not nested', first: first!, second: second!, moments, rows }, signal))
+  known?.set(digest, tests)
+  return tests ?? 'no rows'
 }
 
 function solutions(lower: Entry, upper: Entry, memory: StudyMemory) {

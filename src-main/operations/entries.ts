@@ -2,6 +2,7 @@
  * The candidates of a study made ready: their models, their samples, and the digests their fits are remembered by.
  */
 import { createHash } from 'node:crypto'
+import type { NotNestedTests } from '../statistics/comparison/not-nested.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
 import type { Candidate, DataSet, Origin, Plan } from '../study/study.ts'
 import type { FitOutcome, RelationOutcome } from '../workers/jobs.ts'
@@ -12,6 +13,8 @@ import { cellsOf, type Family, sampleOf } from './family.ts'
 export interface StudyMemory {
   fits: Map<string, FitOutcome>
   relations: Map<string, RelationOutcome>
+  /** Casewise tests of pairs that are not nested; computed again where the map is left out. */
+  notNested?: Map<string, NotNestedTests | null>
 }
 
 export interface Entry {

@@ -5,6 +5,7 @@
  */
 import { index, pIs, signedIndex, statistic } from '../reporting/numbers.ts'
 import { criticalLevel, type DifferenceTest, holm, normalDifference } from '../statistics/comparison/difference-test.ts'
+import type { NotNestedTests } from '../statistics/comparison/not-nested.ts'
 import { type ScaledSide, scaledDifference, strictlyPositiveDifference } from '../statistics/comparison/scaled-difference.ts'
 import { chiBarSquareQuantile, chiBarSquareUpper, type MixturePart } from '../statistics/distributions/mixtures.ts'
 import { rmsea } from '../statistics/fit/indices.ts'
@@ -12,6 +13,7 @@ import type { CandidateResult, DifferenceResult, LadderResult, StepResult, Verdi
 import { thresholdsFor } from '../study/rule-presets.ts'
 import type { Rules } from '../study/study.ts'
 import type { RelationOutcome } from '../workers/jobs.ts'
+import { notNestedResult } from './not-nested-result.ts'
 
 /** One step before it is judged: its sides (null where not fitted yet), what it adds, and how its models stand to each other. */
 export interface StepGround {
@@ -28,6 +30,8 @@ export interface StepGround {
   scalingAtUpper?: number | null
   /** The parameters that the upper rung puts on their boundary; null when there are none. */
   boundary?: BoundaryGround | null
+  /** Of a pair that is not nested: the casewise tests with `to` as the first model, or that there are no cases to test on. */
+  notNested?: NotNestedTests | 'no rows'
   /** Cases per group, and whether the step adds equal loadings: what published rules look at. */
   sizes?: readonly number[]
   addsLoadings?: boolean
@@ -146,7 +150,7 @@ function refusal({ from, to, lower, upper, sameMoments, relation }: StepGround):
     default:
       return {
         short: 'not nested',
-        sentence: `${to} is not nested in ${from}, so no chi-square difference between them has a known distribution; compare their AIC and BIC.`
+        sentence: `${to} is not nested in ${from}, so no chi-square difference between them has a known distribution.`
       }
   }
 }
@@ -176,6 +180,7 @@ function stepResult(ground: StepGround, test: StepTest | null, holmP: number | n
     relation: relation?.relation === 'reversed' ? 'nested' : named,
     proof: relation?.proof ?? null,
     difference: null,
+    notNested: null,
     deltaCfi: delta((s) => s.cfi),
     deltaRmsea: delta((s) => s.rmsea.estimate),
     deltaSrmr: delta((s) => s.srmr),
@@ -187,11 +192,25 @@ function stepResult(ground: StepGround, test: StepTest | null, holmP: number | n
     noTest: refused?.short ?? null,
     because: refused?.sentence ?? ''
   }
+  if (refused?.short === 'not nested') return { ...step, ...casewise(ground, rules) }
   if (refused !== null) return step
   if (relation?.relation === 'equivalent') return { ...step, verdict: 'holds', because: equivalentSentence(from, to) }
   if (test === null) return { ...step, noTest: 'the scaling of the difference is not defined', because: undefinedScaling }
   const difference = differenceResult(test, holmP, rules, upper!)
   return { ...step, difference, ...judge({ ...step, difference }, ground, rules) }
+}
+
+/** What can be said of a pair that is not nested, after the refusal of the difference test. */
+function casewise(ground: StepGround, { alpha }: Rules): Pick<StepResult, 'notNested' | 'because'> {
+  const { notNested: tests, lower, upper } = ground
+  const refused = refusal(ground)!.sentence
+  if (tests === undefined) return { notNested: null, because: `${refused} Compare their AIC and BIC.` }
+  if (tests === 'no rows') {
+    const why = "Vuong's (1989) tests need the answers of each case, which published summaries do not give"
+    return { notNested: null, because: `${refused} Compare their AIC and BIC; ${why}.` }
+  }
+  const notNested = notNestedResult(tests, lower!, upper!, alpha)
+  return { notNested, because: `${refused} ${notNested.sentence}` }
 }
 
 const undefinedScaling =

@@ -68,6 +68,8 @@ function watchedCrew(crew: Crew): WatchedCrew {
         return outcome
       },
       restrictedScaling: (job, signal) => crew.restrictedScaling(job, signal),
+      notNested: (job, signal) => crew.notNested(job, signal),
+      familyOrder: (job, signal) => crew.familyOrder(job, signal),
       resample: (job, signal) => crew.resample(job, signal),
       scoreTests: (job, signal) => crew.scoreTests(job, signal),
       close: () => crew.close()
@@ -94,8 +96,21 @@ function recordingMemory({ project, plan, version }: RecordedWork, seen: Watched
     project.recordRelation({ digest, restricted, general, version, outcome })
     return outcome
   }
-  return { fits: new RecordingMap(project.fits(), keepFit), relations: new RecordingMap(project.relations(), keepRelation) }
+  return {
+    fits: new RecordingMap(project.fits(), keepFit),
+    relations: new RecordingMap(project.relations(), keepRelation),
+    notNested: casewiseTests(project)
+  }
 }
+
+/** Casewise tests of a project's pairs, kept while it is open: they are made anew from what is recorded. */
+function casewiseTests(project: Project): NonNullable<StudyMemory['notNested']> {
+  const known = openTests.get(project) ?? new Map()
+  openTests.set(project, known)
+  return known
+}
+
+const openTests = new WeakMap<Project, NonNullable<StudyMemory['notNested']>>()
 
 /** Which candidate has these cells; null for cells that no candidate has. Compiles the family at the first question only. */
 function namesByCells(plan: Plan, project: Project): (cells: ModelCells | undefined) => string | null {

@@ -41,6 +41,38 @@ export interface DifferenceResult {
   critical: number
 }
 
+/** Two models that are not nested, case by case (Vuong 1989). Signs: positive where `to` fits better. */
+export interface NotNestedResult {
+  /** Log-likelihood of `to` less that of `from`. */
+  logLikelihoodRatio: number
+  /** Variance of the casewise differences, divisor n. */
+  omega2: number
+  /** Whether the two can be told apart on these data: n omega^2 and its p; null where it cannot be computed. */
+  distinguishable: { statistic: number; p: number } | null
+  /** Null where omega^2 is zero. Not to be read where the two cannot be told apart. */
+  z: number | null
+  /** Two-sided; then one-sided, that `to` fits better, and that `from` does. */
+  p: number | null
+  pTo: number | null
+  pFrom: number | null
+  /** z corrected for the number of parameters, in the manner of AIC and of BIC. */
+  correctedAic: { z: number; p: number } | null
+  correctedBic: { z: number; p: number } | null
+  /** 95% interval of the difference in BIC. */
+  bicInterval: { lower: number; upper: number }
+  evidenceAic: EvidenceRatio | null
+  evidenceBic: EvidenceRatio | null
+  /** The candidate that fits better at the rules' alpha; null when neither does. */
+  favours: string | null
+  sentence: string
+}
+
+/** How many times the weight of the favoured candidate is that of the other; null beyond what a number can hold. */
+export interface EvidenceRatio {
+  favours: string
+  ratio: number | null
+}
+
 export interface StepResult {
   /** The lower rung. */
   from: string
@@ -50,6 +82,8 @@ export interface StepResult {
   relation: Relation | null
   proof: 'constraints' | 'refit' | null
   difference: DifferenceResult | null
+  /** Only of a pair that is not nested, where the cases themselves are there; else null. */
+  notNested: NotNestedResult | null
   /** All deltas are the value of `to` minus the value of `from`. */
   deltaCfi: number | null
   deltaRmsea: number | null

@@ -2,6 +2,8 @@
  * A crew of one: does each job on the calling thread. For tests and for reading; a window would freeze under it.
  */
 
+import { notNestedTests } from '../statistics/comparison/not-nested.ts'
+import { familyOrder } from '../statistics/comparison/partial-order.ts'
 import { relationOf } from '../statistics/comparison/relation.ts'
 import { scalingAtRestricted } from '../statistics/comparison/scaled-difference.ts'
 import { scoreTests } from '../statistics/estimation/score-tests.ts'
@@ -13,6 +15,8 @@ export const inlineCrew: Crew = {
   fit: done,
   relation: done,
   restrictedScaling: done,
+  notNested: done,
+  familyOrder: done,
   resample: done,
   scoreTests: done,
   async close() {}
@@ -32,6 +36,10 @@ export function doJob(job: Job): Outcome {
       return relationOf(job)
     case 'restricted scaling':
       return scalingAtRestricted(job)
+    case 'not nested':
+      return notNestedTests(job)
+    case 'family order':
+      return familyOrder(job)
     case 'resample':
       return resampleLadder(job, scalingAtRestricted)
     case 'score tests':

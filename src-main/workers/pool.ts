@@ -31,6 +31,8 @@ export function createPool(options: PoolOptions): Crew {
     fit: (job, signal) => run(pool, job, signal),
     relation: (job, signal) => run(pool, job, signal),
     restrictedScaling: (job, signal) => run(pool, job, signal),
+    notNested: (job, signal) => run(pool, job, signal),
+    familyOrder: (job, signal) => run(pool, job, signal),
     resample: (job, signal) => run(pool, job, signal),
     scoreTests: (job, signal) => run(pool, job, signal),
     close: () => pool.destroy()

@@ -16,6 +16,8 @@ const unwilling: Crew = {
   relation: () => Promise.reject(new Error('asked to compare bad input')),
   restrictedScaling: () => Promise.reject(new Error('asked to scale bad input')),
   resample: () => Promise.reject(new Error('asked to resample bad input')),
+  notNested: () => Promise.reject(new Error('asked to compare bad input')),
+  familyOrder: () => Promise.reject(new Error('asked to order bad input')),
   scoreTests: () => Promise.reject(new Error('asked to test bad input')),
   close: async () => {}
 }

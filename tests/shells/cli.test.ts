@@ -157,6 +157,8 @@ function endlessCrew(onFirst: () => void): Crew {
     relation: (_job, signal) => wait(signal),
     restrictedScaling: (_job, signal) => wait(signal),
     resample: (_job, signal) => wait(signal),
+    notNested: (_job, signal) => wait(signal),
+    familyOrder: (_job, signal) => wait(signal),
     scoreTests: (_job, signal) => wait(signal),
     close: async () => {}
   }

@@ -140,6 +140,7 @@ function step(from: string, to: string, own: Partial<StepResult>): StepResult {
     deltaAic: -12.17,
     deltaBic: -60.1,
     verdict: 'holds',
+    notNested: null,
     noTest: null,
     because: 'Delta T 11.83 on 12 df stays below 21.03 (Holm p = .460, alpha .05).',
     ...own

@@ -283,6 +283,7 @@ function step(
     deltaAic: -12.2,
     deltaBic: -70,
     verdict: holds ? 'holds' : 'does not hold',
+    notNested: null,
     noTest: null,
     because: `The difference test gives ${difference.T} on ${difference.df} df, ${holds ? 'below' : 'above'} the critical value ${difference.critical} at alpha .05 after Holm's adjustment.`
   }

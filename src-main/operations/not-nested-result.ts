@@ -29,7 +29,7 @@ export function notNestedResult(tests: NotNestedTests, from: CandidateResult, to
     evidenceBic: evidence(from, to, (side) => side.bic),
     favours
   }
-  const corrections = from.parameters === to.parameters ? '' : correctionSentence(result)
+  const corrections = apart && from.parameters !== to.parameters ? correctionSentence(result) : ''
   return { ...result, sentence: `${testSentence(result, from.name, to.name, apart)}${corrections} ${evidenceSentence(result)}` }
 }
 
@@ -64,8 +64,8 @@ function testSentence({ omega2, distinguishable, z, p, favours }: Numbers, from:
   return `${opening}, and ${favours} fits better than ${favours === to ? from : to}: ${numbers}.`
 }
 
-function correctionSentence({ distinguishable, correctedAic, correctedBic }: Numbers): string {
-  if (distinguishable === null || correctedAic === null || correctedBic === null) return ''
+function correctionSentence({ correctedAic, correctedBic }: Numbers): string {
+  if (correctedAic === null || correctedBic === null) return ''
   const part = ({ z, p }: { z: number; p: number }) => `z = ${statistic(Math.abs(z))}, ${pIs('p', p)}`
   return ` Corrected for the number of parameters as AIC does, ${part(correctedAic)}; as BIC does, ${part(correctedBic)}.`
 }

@@ -9,6 +9,9 @@ export interface Derivation {
   across: { grouping: string; equal: EqualSet[] } | null
 }
 
+/** What the dialog starts with: what is let go of the selected candidate. */
+export type DerivationStart = Omit<Derivation, 'across'>
+
 /**
  * The candidate in the contract's words. A rung that an invariance ladder made stands in no plan by itself, so what is
  * derived from it is written as derived from the candidate behind it, with all that the rung says.

@@ -1,14 +1,11 @@
 /** Estimates laid out for reading: by part, loadings by factor, with the scale of the small pictures. Formatting only. */
-import type { CellPart, EstimateResult } from '../../src-main/operations/contract.ts'
+import type { CandidateResult, CellPart, EstimateResult } from '../../src-main/operations/contract.ts'
 import { partTitles } from '../state/words.ts'
-
-/** 95% of a normal variate lies within this many standard errors; for the displayed interval only. */
-const intervalHalfWidth = 1.96
 
 export interface EstimateRow {
   name: string
   estimate: EstimateResult
-  /** est. ± 1.96 standard errors; null for a fixed cell or where no standard error could be had. */
+  /** The 95% interval; null for a fixed cell or where no standard error could be had. */
   interval: { lower: number; upper: number } | null
 }
 export interface EstimateBlock {
@@ -48,6 +45,18 @@ export function estimateSections(estimates: readonly EstimateResult[], group: st
     .filter((one) => one.blocks.length > 0)
 }
 
+/** Where the standard errors come from, in words. */
+export function errorsInWords(kind: NonNullable<CandidateResult['standardErrors']>): string {
+  switch (kind) {
+    case 'expected':
+      return 'from the expected information'
+    case 'observed':
+      return 'from the observed information'
+    case 'robust':
+      return 'robust (sandwich), valid without normality'
+  }
+}
+
 /** Groups that estimates speak of, in order. */
 export function estimateGroups(estimates: readonly EstimateResult[]): (string | null)[] {
   return [...new Set(estimates.map((estimate) => estimate.group))]
@@ -69,9 +78,8 @@ function rowName(part: CellPart, of: readonly string[]): string {
   return of.join(' with ')
 }
 
-function interval({ free, estimate, standardError }: EstimateResult): EstimateRow['interval'] {
-  if (!free || estimate === null || standardError === null) return null
-  return { lower: estimate - intervalHalfWidth * standardError, upper: estimate + intervalHalfWidth * standardError }
+function interval({ free, lower, upper }: EstimateResult): EstimateRow['interval'] {
+  return !free || lower === null || upper === null ? null : { lower, upper }
 }
 
 function scaleOf(rows: readonly EstimateRow[]): EstimateSection['scale'] {

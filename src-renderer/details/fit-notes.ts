@@ -1,6 +1,6 @@
 /** The indices of one candidate with their names, and plain notes on when to trust them. Pure; nothing is computed. */
 import type { CandidateResult } from '../../src-main/operations/contract.ts'
-import { bounded, count, fixed, precise, probability } from '../state/format.ts'
+import { bounded, count, fixed, plural, precise, probability } from '../state/format.ts'
 
 export interface FitLine {
   name: string
@@ -10,6 +10,8 @@ export interface FitLine {
 }
 export interface FitSection {
   title: string
+  /** What its lines have in common; null where they are of the usual kind. */
+  note: string | null
   lines: FitLine[]
 }
 
@@ -17,10 +19,9 @@ export function fitSections(r: CandidateResult): FitSection[] {
   return [
     {
       title: 'Exact fit',
+      note: r.scaled === null ? null : `Scaling factor after ${r.scaled.form}.`,
       lines: [
-        line('T', r.T, fixed(r.T, 2), `on ${count(r.df)} df`),
-        line('p', r.p, probability(r.p)),
-        ...(r.scaled === null ? [] : [line('Mean-scaled T', r.scaled.T, fixed(r.scaled.T, 2), `p ${probability(r.scaled.p)}`)]),
+        ...exactFit(r),
         line('Minimum F', r.minimum, fixed(r.minimum, 5), `T = F × N, N = ${count(r.n)}`),
         line(
           'Baseline T',
@@ -32,6 +33,7 @@ export function fitSections(r: CandidateResult): FitSection[] {
     },
     {
       title: 'Approximate fit',
+      note: r.plugIn === null ? null : consistentNote,
       lines: [
         line('RMSEA', r.rmsea.estimate, bounded(r.rmsea.estimate), interval(r)),
         line('p, close fit (at most .05)', r.rmsea.closeFitP, probability(r.rmsea.closeFitP)),
@@ -40,12 +42,14 @@ export function fitSections(r: CandidateResult): FitSection[] {
         line('TLI', r.tli, bounded(r.tli)),
         line('SRMR', r.srmr, bounded(r.srmr), 'covariances'),
         line('SRMR with means', r.srmrWithMeans, bounded(r.srmrWithMeans)),
+        ...plugInLines(r),
         line("McDonald's centrality", r.mcdonald, bounded(r.mcdonald)),
         line('Gamma-hat', r.gammaHat, bounded(r.gammaHat))
       ]
     },
     {
       title: 'For comparing candidates',
+      note: null,
       lines: [
         line('Free parameters', r.parameters, count(r.parameters)),
         line('Log-likelihood', r.logLikelihood, fixed(r.logLikelihood, 2)),
@@ -56,6 +60,38 @@ export function fitSections(r: CandidateResult): FitSection[] {
       ]
     }
   ]
+}
+
+const consistentNote =
+  'RMSEA, CFI and TLI are of the population-consistent kind (Brosseau-Liard, Savalei & Li 2012; Brosseau-Liard & Savalei 2014); plug-in: the scaled statistic put into the usual formula.'
+
+/** The statistic that counts first; of a scaled one also its factor and the statistic before scaling. */
+function exactFit(r: CandidateResult): FitLine[] {
+  const df = `on ${count(r.df)} df`
+  if (r.scaled === null) return [line('T', r.T, fixed(r.T, 2), df), line('p', r.p, probability(r.p))]
+  return [
+    line('T, mean-scaled', r.scaled.T, fixed(r.scaled.T, 2), df),
+    line('p', r.scaled.p, probability(r.scaled.p)),
+    line('Scaling factor c', r.scaled.scaling, fixed(r.scaled.scaling, 4)),
+    line('T before scaling', r.T, fixed(r.T, 2), `p ${probability(r.p)}`)
+  ]
+}
+
+function plugInLines({ plugIn }: CandidateResult): FitLine[] {
+  if (plugIn === null) return []
+  return [
+    line('RMSEA, plug-in', plugIn.rmsea, bounded(plugIn.rmsea)),
+    line('CFI, plug-in', plugIn.cfi, bounded(plugIn.cfi)),
+    line('TLI, plug-in', plugIn.tli, bounded(plugIn.tli))
+  ]
+}
+
+/** How the search for the smallest minimum went, in a sentence. */
+export function searchInWords({ convergence }: CandidateResult): string {
+  const { iterations, starts, minima } = convergence
+  const went = `${plural(iterations, 'iteration')} from ${starts === 1 ? 'one start' : `${count(starts)} starts`}`
+  if (minima > 1) return `${went}; ${count(minima)} distinct minima were seen, the smallest is shown.`
+  return starts > 1 && minima === 1 ? `${went}, all that converged ending in the same minimum.` : `${went}.`
 }
 
 /** When N is such that the exact-fit test needs a word of caution (methods: section 5). */

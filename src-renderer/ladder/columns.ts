@@ -7,7 +7,7 @@ export interface RungNumber {
   text: string
   /** A quieter addition, its space included: the degrees of freedom. */
   aside: string | null
-  /** A second line: the interval. */
+  /** A second line: the interval, the scaling factor. */
   under: string | null
   title: string | undefined
 }
@@ -21,7 +21,7 @@ export function rungNumbers(result: CandidateResult): RungNumber[] {
   const p = result.scaled?.p ?? result.p
   const interval = rmsea.lower === null || rmsea.upper === null ? null : `[${bounded(rmsea.lower)}, ${bounded(rmsea.upper)}]`
   return [
-    { name: 'T (df)', text: fixed(T, 2), aside: `\u00a0(${result.df})`, under: null, title: precise(T) },
+    { name: 'T (df)', text: fixed(T, 2), aside: `\u00a0(${result.df})`, under: scalingUnder(result), title: precise(T) },
     { name: 'p', text: probability(p), aside: null, under: null, title: precise(p) },
     { name: 'CFI', text: bounded(result.cfi), aside: null, under: null, title: precise(result.cfi) },
     { name: 'RMSEA', text: bounded(rmsea.estimate), aside: null, under: interval, title: precise(rmsea.estimate) },
@@ -29,4 +29,18 @@ export function rungNumbers(result: CandidateResult): RungNumber[] {
     { name: 'AIC', text: fixed(result.aic, 1), aside: null, under: null, title: precise(result.aic) },
     { name: 'BIC', text: fixed(result.bic, 1), aside: null, under: null, title: precise(result.bic) }
   ]
+}
+
+function scalingUnder({ scaled }: CandidateResult): string | null {
+  return scaled === null ? null : `c\u00a0=\u00a0${fixed(scaled.scaling, 3)}`
+}
+
+/** What the figures of these rungs rest on, where that is not the ordinary statistic; null where it is. */
+export function scalingInWords(results: readonly CandidateResult[]): string | null {
+  const forms = [...new Set(results.flatMap(({ scaled }) => (scaled === null ? [] : [scaled.form])))]
+  if (forms.length === 0) return null
+  const consistent = results.some(({ plugIn }) => plugIn !== null)
+    ? '; CFI and RMSEA are of the population-consistent kind (the plug-in kind stands under Fit)'
+    : ''
+  return `T and its p are mean-scaled, c after ${forms.join(' and ')}${consistent}.`
 }

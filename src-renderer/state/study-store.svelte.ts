@@ -15,6 +15,9 @@ export interface RunningWork {
   stopping: boolean
 }
 
+export const places = ['Ladder', 'Table', 'Data'] as const
+export type Place = (typeof places)[number]
+
 type StudyOperation = {
   [N in OperationName]: Operations[N]['result'] extends StudyView ? N : never
 }[OperationName]
@@ -25,6 +28,10 @@ export class StudyStore {
   selected = $state<string | null>(null)
   /** Name of the ladder in the middle. */
   ladder = $state<string | null>(null)
+  /** What the middle shows. */
+  place = $state<Place>('Ladder')
+  /** The group that every list by group shows, where a candidate has it. */
+  group = $state<string | null>(null)
   work = $state.raw<RunningWork | null>(null)
   /** Bad input of a command that has no field of its own. */
   problem = $state.raw<Problem | null>(null)
@@ -98,11 +105,12 @@ export class StudyStore {
   /** A new study starts with its first ladder and where one can stand on it; the same study keeps what is looked at. */
   #show(view: StudyView): void {
     const names = view.candidates.map((c) => c.candidate.name)
-    const sameStudy = this.view?.study === view.study && this.view.file === view.file
+    const sameStudy = this.view?.study === view.study && this.view.result.data.digest === view.result.data.digest
     this.view = view
     this.fault = null
     if (!view.ladders.some((ladder) => ladder.name === this.ladder)) this.ladder = view.ladders.at(-1)?.name ?? null
     this.#chosen &&= sameStudy && this.selected !== null && names.includes(this.selected)
+    if (!sameStudy) this.place = 'Ladder'
     if (!this.#chosen) this.selected = this.#firstLook(view) ?? names[0] ?? null
   }
 
@@ -113,7 +121,7 @@ export class StudyStore {
   #work(event: WorkEvent): void {
     const stopping = this.work?.stopping ?? false
     if (event.kind === 'started') this.work = { done: 0, total: event.total, secondsLeft: null, stopping }
-    else if (event.kind === 'fitted') {
+    else if (event.kind === 'fitted' || event.kind === 'resampled') {
       this.work = { done: event.done, total: event.total, secondsLeft: event.secondsLeft, stopping }
     } else this.work = null
   }

@@ -1,5 +1,5 @@
 /** Cells and changes as people say them. Pure. */
-import type { CandidateView, CellName, CellPart, Change, Release } from '../../src-main/operations/contract.ts'
+import type { CandidateView, Caution, CellName, CellPart, Change, Release } from '../../src-main/operations/contract.ts'
 
 /** "loading of sleep on Rest", "covariance of Rest and Mood". */
 export function cellInWords(cell: CellName): string {
@@ -59,8 +59,23 @@ export const partTitles: Readonly<Record<CellPart, string>> = {
   'factor mean': 'Factor means'
 }
 
-/** The state of a candidate in two words at most; a solution with cautions says so. */
-export function stateInWords(entry: CandidateView, cautions: number): string {
-  if (entry.state === 'fitted' && cautions > 0) return cautions === 1 ? '1 caution' : `${cautions} cautions`
-  return entry.state
+/** Codes of cautions that say a solution is one that no population can have. */
+const improper: readonly string[] = [
+  'negative-residual-variance',
+  'negative-factor-variance',
+  'factor-correlation-beyond-one',
+  'factor-covariances-not-positive',
+  'residual-covariances-not-positive'
+]
+
+/** The findings that make a solution improper; empty when it is a proper one. */
+export function improperFindings(cautions: readonly Caution[]): Caution[] {
+  return cautions.filter(({ code }) => improper.includes(code))
+}
+
+/** The state of a candidate in two words at most; a solution that is improper or has cautions says so. */
+export function stateInWords(state: CandidateView['state'], cautions: readonly Caution[]): string {
+  if (state !== 'fitted' || cautions.length === 0) return state
+  if (improperFindings(cautions).length > 0) return 'improper solution'
+  return cautions.length === 1 ? '1 caution' : `${cautions.length} cautions`
 }

@@ -30,7 +30,9 @@ export function rulesInWords(rules: Rules): string {
   const fit =
     change === null
       ? []
-      : [limit('CFI', change.cfi), limit('RMSEA', change.rmsea), limit('SRMR', change.srmr)].filter((text) => text !== null)
+      : [change.preset, limit('CFI', change.cfi), limit('RMSEA', change.rmsea), limit('SRMR', change.srmr)].filter(
+          (text) => text !== null
+        )
   if (rules.decideBy === 'difference test') return ['difference test', ...test].join(', ')
   if (rules.decideBy === 'change in fit') return ['change in fit', ...fit].join(', ')
   return ['both criteria', ...test, ...fit].join(', ')

@@ -3,18 +3,36 @@
  *
  * Where there is no browser these tests say so in one line; under CI=true that is a failure. Pictures are kept in artifacts/.
  */
-import { mkdirSync } from 'node:fs'
+import { mkdirSync, writeFileSync } from 'node:fs'
 import { join } from 'node:path'
 import axe from 'axe-core'
 import type { Browser, Locator, Page } from 'playwright-core'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
-import { bounded, fixed } from '../../src-renderer/state/format.ts'
+import { bounded, fixed, probability } from '../../src-renderer/state/format.ts'
 import { root, temporaryFolder } from '../shells/program.ts'
 import { findBrowser, launchBrowser } from './browser.ts'
 import { type Host, startHost } from './host.ts'
 
 const pictures = join(root, 'artifacts')
 const sampleData = join(root, 'fixtures', 'sample', 'first-visit.csv')
+/** Correlations that one factor reproduces only with a negative residual variance of a; and two unrelated pairs. */
+const troubledPlan = `study: Four in trouble
+data:
+  indicators: [a, b, c, d]
+  divisor: n-1
+  summary:
+    - n: 300
+      correlation: [[1], [0.8, 1], [0.8, 0.5, 1], [0.8, 0.5, 0.5, 1]]
+      sd: [1, 1, 1, 1]
+candidates:
+  All four:
+    factors: { All: [a, b, c, d] }
+  Two by two:
+    factors: { First: [a, b], Second: [c, d] }
+    factor covariances: zero
+`
+/** How long a click may wait for its target, in ms: well over what a busy machine needs. */
+const patience = 20_000
 const executable = findBrowser(process.env)
 
 if (executable === null) {
@@ -41,6 +59,7 @@ if (executable === null) {
       const faults: string[] = []
       beforeAll(async () => {
         page = await browser.newPage({ viewport: { width: 1600, height: 1000 }, colorScheme: 'light' })
+        page.setDefaultTimeout(patience)
         watchFaults(page, faults)
         await page.goto(host.link)
         await page.getByTestId('stand-here').waitFor()
@@ -83,8 +102,9 @@ if (executable === null) {
 
       test('has no serious fault of accessibility in any of its places', async () => {
         expect(await seriousProblems(page)).toEqual([])
-        for (const tab of ['Fit', 'Cautions', 'Residuals', 'Table']) {
+        for (const tab of ['Fit', 'Cautions', 'Residuals', 'What if', 'Table', 'Data']) {
           await page.getByRole('tab', { name: tab, exact: true }).click()
+          await page.getByRole('status').filter({ hasText: 'Working out' }).waitFor({ state: 'detached' })
           expect(await seriousProblems(page)).toEqual([])
         }
         for (const name of ['Open…', 'Import data…', 'Save…', 'Export…', /^Rules:/, 'New candidate', 'Derive', 'New ladder']) {
@@ -95,6 +115,65 @@ if (executable === null) {
           await page.getByRole('dialog').waitFor({ state: 'detached' })
         }
         await page.getByRole('tab', { name: 'Ladder', exact: true }).click()
+      })
+
+      test('shows the data: who answered what, what complete cases cost, how far from normal', async () => {
+        const { data } = (await host.ask('currentStudy', null))!.result
+        await page.getByRole('button', { name: /^9 items, N = 905/ }).click()
+        expect(await page.getByRole('tab', { name: 'Data', exact: true }).getAttribute('aria-selected')).toBe('true')
+        expect(await textOf(page.getByTestId('missing'))).toContain(`drops these ${data.missing.cases} cases`)
+        const rows = page.getByTestId('pattern')
+        expect(await rows.count()).toBe(data.missing.patterns.length)
+        expect(await textOf(rows.first())).toContain(`${data.missing.patterns[0]!.n} `)
+        expect(await rows.locator('.square:not(.answered)').count()).toBe(
+          data.missing.patterns.flatMap(({ answered }) => data.indicators.filter((name) => !answered.includes(name))).length
+        )
+        expect(await textOf(page.getByTestId('normality'))).toBe(data.normality!.sentence)
+        await takePictures(page, 'window-data')
+        await page.getByRole('tab', { name: 'Ladder', exact: true }).click()
+      })
+
+      test('shows intervals and errors as the program gives them, of the group chosen once for every list', async () => {
+        const { result } = (await host.ask('currentStudy', null))!
+        await candidate(page, 'Three factors, scalar').click()
+        await page.getByRole('tab', { name: 'Estimates', exact: true }).click()
+        await page.getByLabel('Group').selectOption('Old Mill')
+        const bags = result.candidates
+          .find(({ name }) => name === 'Three factors, scalar')!
+          .estimates.find(({ part, of, group }) => part === 'loading' && of[0] === 'bags' && group === 'Old Mill')!
+        const row = await textOf(page.getByRole('row', { name: /^bags/ }).first())
+        expect(row).toContain(`${fixed(bags.lower, 2)}, ${fixed(bags.upper, 2)}`)
+        expect(row).toContain(bounded(bags.standardized, 2) + bounded(bags.standardizedError, 2))
+        await page.getByText('Standard errors from the expected information').waitFor()
+        for (const tab of ['Residuals', 'What if']) {
+          await page.getByRole('tab', { name: tab, exact: true }).click()
+          await expect.poll(() => page.getByLabel('Group').inputValue()).toBe('Old Mill')
+        }
+        await page.getByRole('tab', { name: 'Fit', exact: true }).click()
+        expect(await textOf(page.getByTestId('search'))).toMatch(/iterations? from/)
+        expect(await page.getByRole('table', { name: 'Starts tried, in order' }).getByRole('row').count()).toBeGreaterThan(1)
+      })
+
+      test('says what letting a restriction go would do, and derives the candidate without it', async () => {
+        const { tests, leftOut } = await host.ask('scoreTests', { candidate: 'Three factors, scalar' })
+        await page.getByRole('tab', { name: 'What if', exact: true }).click()
+        await page.getByText('A change chosen by looking must be justified by content and checked on new data').waitFor()
+        await page.getByLabel('Group').selectOption('Weir Lane')
+        const first = tests.find(({ plausibility, group }) => plausibility === 'stated' && group === 'Weir Lane')!
+        const shown = page.getByTestId('what-if').first()
+        await expect.poll(() => textOf(shown)).toContain(first.words)
+        for (const text of [fixed(first.statistic, 2), probability(first.p), fixed(first.expectedValue, 3)])
+          expect(await textOf(shown)).toContain(text)
+        expect(await textOf(page.getByRole('tabpanel', { name: 'What if' }))).toMatch(
+          leftOut > 0 ? new RegExp(`${leftOut} restrictions? left out`) : /./
+        )
+        await takePictures(page, 'window-what-if')
+        await shown.getByRole('button', { name: `Derive with this free…: ${first.words}` }).click()
+        const dialog = page.getByRole('dialog')
+        await dialog.getByText(/^Let the .* differ in Weir Lane only$/i).waitFor()
+        await expect.poll(() => textOf(dialog.getByTestId('check'))).toMatch(/95 df, identified/)
+        await page.keyboard.press('Escape')
+        await dialog.waitFor({ state: 'detached' })
       })
 
       test('derives a candidate by a sentence, fits it and sets it on a ladder', async () => {
@@ -204,11 +283,49 @@ if (executable === null) {
       })
     })
 
+    describe('on solutions that are none, or none that could be', () => {
+      let page: Page
+      const folder = temporaryFolder()
+      beforeAll(async () => {
+        page = await browser.newPage({ viewport: { width: 1440, height: 900 }, colorScheme: 'light' })
+        page.setDefaultTimeout(patience)
+        await page.goto(host.link)
+        const plan = join(folder.path, 'plan.yaml')
+        writeFileSync(plan, troubledPlan)
+        await fillAndPress(page, 'Open…', plan, 'Open')
+        await page.getByRole('button', { name: 'Fit 2 drafts' }).click()
+      })
+      afterAll(async () => {
+        await page.close()
+        folder.remove()
+      })
+
+      test('an improper solution is told in the list, on the candidate and in words', async () => {
+        await expect.poll(() => textOf(candidate(page, 'All four'))).toContain('improper solution')
+        await candidate(page, 'All four').click()
+        expect(await textOf(page.getByTestId('improper'))).toMatch(/residual variance of a is negative/)
+        expect(await seriousProblems(page)).toEqual([])
+        await takePictures(page, 'window-improper')
+      })
+
+      test('a candidate without a solution says why, and what was tried', async () => {
+        const { result } = (await host.ask('currentStudy', null))!
+        const { reason, state } = result.candidates.find(({ name }) => name === 'Two by two')!
+        expect(state).toBe('not identified')
+        await candidate(page, 'Two by two').click()
+        await page.getByRole('tab', { name: 'Fit', exact: true }).click()
+        await page.getByRole('tabpanel', { name: 'Fit' }).getByText(reason!).waitFor()
+        await page.getByRole('tab', { name: 'What if', exact: true }).click()
+        await page.getByRole('alert').getByText('has no solution to test').waitFor()
+      })
+    })
+
     describe('on data of one’s own', () => {
       let page: Page
       const faults: string[] = []
       beforeAll(async () => {
         page = await browser.newPage({ viewport: { width: 1440, height: 900 }, colorScheme: 'light' })
+        page.setDefaultTimeout(patience)
         watchFaults(page, faults)
         await page.goto(host.link)
         await page.getByRole('button', { name: 'Import data…' }).click()
@@ -221,16 +338,27 @@ if (executable === null) {
         expect(await textOf(page.getByRole('alert'))).toContain('not-there.csv')
       })
 
-      test('imports a data file and shows what to do next', async () => {
+      test('imports a data file, proposes how to estimate, and shows the data and what to do next', async () => {
         const dialog = page.getByRole('dialog')
         await dialog.getByLabel(/^Data file/).fill(sampleData)
         await dialog.getByLabel('Name of the study').fill('My own study')
         await dialog.getByLabel('Group column').selectOption('clinic')
         await dialog.getByRole('button', { name: 'Choose all numeric' }).click()
-        await page.screenshot({ path: join(pictures, 'window-import.png') })
+        expect(await dialog.getByLabel('full information').isChecked()).toBe(true)
+        expect(await dialog.getByLabel('observed').isChecked()).toBe(true)
+        await dialog.getByLabel('mean-scaled').check()
+        expect(await dialog.getByLabel('robust').isChecked()).toBe(true)
+        expect(await seriousProblems(page)).toEqual([])
+        await takePictures(page, 'window-import')
         await dialog.getByRole('button', { name: 'Make the study' }).click()
         await page.getByRole('heading', { name: 'My own study' }).waitFor()
-        await page.getByText('Start with a candidate').waitFor()
+        expect((await host.ask('currentStudy', null))?.estimation).toMatchObject({
+          statistic: 'mean-scaled',
+          missing: 'full information',
+          standardErrors: 'robust'
+        })
+        await page.getByText('Then start with a candidate').waitFor()
+        expect(await textOf(page.getByTestId('missing'))).toContain('this study keeps every answer given')
         expect(await seriousProblems(page)).toEqual([])
       })
 
@@ -278,10 +406,32 @@ if (executable === null) {
         await dialog.waitFor({ state: 'detached' })
         await page.getByRole('button', { name: /^Fit \d+ drafts$/ }).click()
         await expect
-          .poll(async () => (await host.ask('currentStudy', null))?.candidates.every((one) => one.state === 'fitted'))
+          .poll(async () => (await host.ask('currentStudy', null))?.candidates.every((one) => one.state === 'fitted'), {
+            timeout: patience
+          })
           .toBe(true)
-        await expect.poll(() => page.getByTestId('step').count()).toBe(2)
+        await expect.poll(() => page.getByTestId('step').count(), { timeout: patience }).toBe(2)
         expect(await textOf(page.getByRole('button', { name: /^Rules:/ }))).toContain('Rules fixed')
+      })
+
+      test('names the scaled statistic, its factor and the kind of its indices', async () => {
+        const { result } = (await host.ask('currentStudy', null))!
+        const ladder = result.ladders.at(-1)!
+        const base = result.candidates.find(({ name }) => name === ladder.rungs[0])!
+        const rung = await textOf(page.locator(`[data-testid=rung][data-name="${base.name}"]`))
+        for (const text of [fixed(base.scaled!.T, 2), `c\u00a0=\u00a0${fixed(base.scaled!.scaling, 3)}`])
+          expect(rung).toContain(text)
+        expect(await textOf(page.getByTestId('scaling'))).toContain(base.scaled!.form)
+        expect(await textOf(page.getByTestId('scaling'))).toContain('population-consistent')
+        await candidate(page, base.name).click()
+        await page.getByRole('tab', { name: 'Fit', exact: true }).click()
+        const details = await textOf(page.getByRole('tabpanel', { name: 'Fit' }))
+        expect(details).toContain(`T before scaling ${fixed(base.T, 2)}`)
+        expect(details).toContain(`CFI, plug-in ${bounded(base.plugIn!.cfi)}`)
+        expect(await seriousProblems(page)).toEqual([])
+        await takePictures(page, 'window-scaled')
+        await page.getByRole('tab', { name: 'Estimates', exact: true }).click()
+        await page.getByText('Standard errors robust').waitFor()
       })
 
       test('saves the study, opens another and finds everything again in the saved file', async () => {
@@ -310,13 +460,24 @@ if (executable === null) {
   })
 }
 
+/** One picture in light colours and one in dark. */
+async function takePictures(page: Page, name: string): Promise<void> {
+  await page.mouse.move(0, 0)
+  for (const colorScheme of ['dark', 'light'] as const) {
+    await page.emulateMedia({ colorScheme })
+    await page.screenshot({ path: join(pictures, `${name}-${colorScheme}.png`) })
+  }
+}
+
 /** Opens a dialog from the header, writes a path into it and presses its last button. */
 async function fillAndPress(page: Page, opener: string, path: string, action: string): Promise<void> {
   await page.getByRole('button', { name: opener, exact: true }).click()
   const dialog = page.getByRole('dialog')
   await dialog.getByLabel(/^File/).fill(path)
   await dialog.getByRole('button', { name: action, exact: true }).click()
-  await dialog.waitFor({ state: 'detached' })
+  await dialog.waitFor({ state: 'detached' }).catch(async (cause: unknown) => {
+    throw new Error(`The dialog stayed: ${await textOf(dialog)}`, { cause })
+  })
 }
 
 function rungNames(page: Page): Promise<(string | null)[]> {

@@ -37,7 +37,7 @@ export async function compareStudy(input: CompareInput, crew: Crew, options: Com
   const entries = entriesOf(input.plan, input.data, input.version, family)
   await fitAll(
     input,
-    entries.filter((entry) => isWanted(entry.candidate, input.names, family.generated)),
+    entries.filter((entry) => isWanted(entry.candidate, input.names, family.bases)),
     crew,
     options
   )
@@ -54,9 +54,10 @@ export async function compareStudy(input: CompareInput, crew: Crew, options: Com
   }
 }
 
-function isWanted(candidate: Candidate, names: string[] | null, generated: ReadonlySet<string>): boolean {
-  if (names === null || names.includes(candidate.name)) return true
-  return generated.has(candidate.name) && candidate.from !== null && names.includes(candidate.from)
+function isWanted({ name }: Candidate, names: string[] | null, bases: ReadonlyMap<string, string>): boolean {
+  if (names === null || names.includes(name)) return true
+  const base = bases.get(name)
+  return base !== undefined && names.includes(base)
 }
 
 async function fitAll(input: CompareInput, entries: Entry[], crew: Crew, { onWork, signal }: CompareOptions): Promise<void> {

@@ -5,7 +5,7 @@
  * no feature can live in one of them only. Inputs are validated by the operation's own schema on the other side.
  */
 
-import type { FitState, StudyResult, Verdict } from '../study/result.ts'
+import type { FitState, Relation, StudyResult, Verdict } from '../study/result.ts'
 import type { Candidate, Caution, CellPart, Estimation, LadderPlan, Origin, Release, Rules } from '../study/study.ts'
 
 export type * from '../study/result.ts'
@@ -133,6 +133,7 @@ export interface StudyView {
 export type WorkEvent =
   | { kind: 'started'; total: number }
   | { kind: 'fitted'; candidate: string; state: FitState; done: number; total: number; secondsLeft: number | null }
+  | { kind: 'resampled'; ladder: string; done: number; total: number; secondsLeft: number | null }
   | { kind: 'finished'; cancelled: boolean }
 
 /** One fixed cell or equality of a fitted candidate, and what releasing it would do: exploratory, for it looks at the results. */
@@ -263,6 +264,68 @@ export interface RefusedComparison {
   reason: string
 }
 
+/** How often each step of a ladder holds, and each rung is the one to stand on, when the cases are drawn anew. */
+export interface StabilityResult {
+  ladder: string
+  /** Resamples asked for, and done: fewer when the work was stopped. */
+  asked: number
+  resamples: number
+  seed: number
+  /** Resamples in which some rung has no solution; they are counted in everything, never left out. */
+  incomplete: number
+  /** Resamples in which one can stand nowhere: the lowest rung has no solution. */
+  nowhere: number
+  steps: {
+    from: string
+    to: string
+    /** In the data themselves. */
+    verdict: Verdict
+    /** Resamples by verdict. */
+    counts: Record<Verdict, number>
+    /** In which the step held. */
+    share: number
+    /** The share that a step which is exactly true would have, for comparison; null where no plain test decides alone. */
+    expectedWhenExact: number | null
+    sentence: string
+  }[]
+  rungs: {
+    rung: string
+    /** Resamples in which it is the one to stand on, and in which it has no solution. */
+    stands: number
+    unsolved: number
+    share: number
+    standsInData: boolean
+    sentence: string
+  }[]
+  /** What the shares mean, and what they do not. */
+  note: string
+}
+
+/** Two candidates with solutions on the same data; `lower` has no more degrees of freedom than `upper`. */
+export interface FamilyRelation {
+  lower: string
+  upper: string
+  relation: Relation
+  /** order of fit: the more restricted one fits better, so it cannot be nested. other pairs: it follows from them. */
+  proof: 'constraints' | 'refit' | 'order of fit' | 'other pairs'
+}
+
+/** How all fitted candidates stand to each other, and the ladders that are in that order. */
+export interface FamilyRelations {
+  /** Every pair on the same data once. */
+  relations: FamilyRelation[]
+  /** Proposed ladders, the longest first, each bottom (least restrictive) first. */
+  chains: string[][]
+  /** Sets of equivalent candidates; one of them stands on a ladder for the others. */
+  equivalent: string[][]
+  /** Nested with nothing, and not equivalent to what is. */
+  off: string[]
+  /** Without a solution so far. */
+  without: string[]
+  /** All of it in words. */
+  sentences: string[]
+}
+
 /** Every call: its input and its result. A call without input takes `null`. */
 export interface Operations {
   currentStudy: { input: null; result: StudyView | null }
@@ -307,6 +370,10 @@ export interface Operations {
     input: { candidate: string }
     result: { differences: LatentMeanView[]; refused: RefusedComparison[]; sentence: string }
   }
+  /** Refits a fitted ladder to resamples of the cases; stopped work gives what was done. */
+  stability: { input: { ladder: string; resamples: number; seed: number }; result: StabilityResult }
+  /** The relation of every pair of fitted candidates, and the ladders in them. */
+  familyRelations: { input: null; result: FamilyRelations }
   recordDecision: { input: { ladder: string; rung: string; reason: string }; result: StudyView }
   saveProject: { input: { path: string }; result: StudyView }
   exportPlan: { input: { path: string }; result: { path: string } }

@@ -27,7 +27,12 @@ export interface Entry {
 }
 
 /** Throws InputError for a candidate that makes no model. */
-export function entriesOf(plan: Plan, data: DataSet, version: string, { candidates, origins }: Family): Entry[] {
+export function entriesOf(
+  plan: Plan,
+  data: DataSet,
+  version: string,
+  { candidates, origins }: Pick<Family, 'candidates' | 'origins'>
+): Entry[] {
   const samples = sampleSource(data, plan.estimation)
   return candidates.map((candidate) => {
     const cells = cellsOf(candidate.name, candidates, plan, data)

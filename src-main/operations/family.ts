@@ -14,6 +14,8 @@ export interface Family {
   candidates: Candidate[]
   /** Names of the generated ones. */
   generated: ReadonlySet<string>
+  /** Of each generated one, the candidate that its ladder is of. */
+  bases: ReadonlyMap<string, string>
   /** By name. A generated candidate is as old as its ladder, unless an origin is given for it by name. */
   origins: ReadonlyMap<string, Origin>
 }
@@ -27,15 +29,17 @@ export function familyOf(
   const candidates = [...plan.candidates]
   const origins = new Map(plan.candidates.map(({ name }) => [name, candidateOrigins.get(name) ?? 'planned']))
   const generated = new Set<string>()
+  const bases = new Map<string, string>()
   for (const ladder of plan.ladders) {
     for (const rung of ladderCandidates(ladder, plan.candidates)) {
       if (origins.has(rung.name)) continue // two ladders may share a rung; the first made it
       candidates.push(rung)
       generated.add(rung.name)
+      if ('invarianceOf' in ladder) bases.set(rung.name, ladder.invarianceOf)
       origins.set(rung.name, candidateOrigins.get(rung.name) ?? ladderOrigins.get(ladder.name) ?? 'planned')
     }
   }
-  return { candidates, generated, origins }
+  return { candidates, generated, bases, origins }
 }
 
 /** One candidate of the family as the cells of its model in these data. @throws InputError naming the candidate */

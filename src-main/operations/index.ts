@@ -12,6 +12,7 @@ import { addCandidate, addLadder, changeRules } from './change-study.ts'
 import { checkCandidate } from './check-candidate.ts'
 import type { Answer, OperationName, Operations, WorkEvent } from './contract.ts'
 import { effectSizes } from './effect-sizes.ts'
+import { familyRelations } from './family-relations.ts'
 import { cancelWork, fitCandidates } from './fit-candidates.ts'
 import { latentMeans } from './latent-means.ts'
 import { currentStudy, newStudy, openPlan, openProject, openSample } from './open-study.ts'
@@ -19,6 +20,7 @@ import { recordDecision } from './record-decision.ts'
 import { releaseByHand, releaseSearch } from './release-search.ts'
 import { exportPlan, exportResult, saveProject } from './save-and-export.ts'
 import { scoreTests } from './score-tests.ts'
+import { stability } from './stability.ts'
 
 export interface Workbench {
   /** @throws whatever is not bad input: an unknown name, a bug */
@@ -80,6 +82,11 @@ const operations: { readonly [N in OperationName]: Operation<N> } = {
   releaseSearch: { input: z.strictObject({ ladder: words, rung: words }), run: releaseSearch },
   effectSizes: { input: z.strictObject({ candidate: words }), run: effectSizes },
   latentMeans: { input: z.strictObject({ candidate: words }), run: latentMeans },
+  stability: {
+    input: z.strictObject({ ladder: words, resamples: z.int().min(1).max(100_000), seed: z.int() }),
+    run: stability
+  },
+  familyRelations: { input: nothing, run: familyRelations },
   recordDecision: { input: z.strictObject({ ladder: words, rung: words, reason: words }), run: recordDecision },
   saveProject: { input: path, run: saveProject },
   exportPlan: { input: path, run: exportPlan },

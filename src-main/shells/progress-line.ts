@@ -37,6 +37,8 @@ function progressText(event: WorkEvent): string | null {
       return `fitting 0 of ${event.total}`
     case 'fitted':
       return `fitting ${event.done} of ${event.total}${timeLeft(event.secondsLeft)}, last: ${plainName(event.candidate)}`
+    case 'resampled':
+      return `resampling ${event.done} of ${event.total}${timeLeft(event.secondsLeft)}`
     case 'finished':
       return null
   }

@@ -28,12 +28,8 @@ const groups = ['g1', 'g2', 'g3']
 export function stabilityInput(count: number): ResampleInput {
   const [p, m, n] = [9, 3, 300]
   const indicators = Array.from({ length: p }, (_, i) => `y${i + 1}`)
-  const rows = simulateRows(
-    p,
-    m,
-    groups.map(() => n),
-    seededGenerator(909)
-  )
+  const generator = seededGenerator(909)
+  const rows = groups.map((_, g) => simulateRows(p, m, n, 0.2 * g, generator))
   const base = candidateSchema.parse({
     name: 'base',
     factors: [0, 3, 6].map((first) => ({ name: `F${first}`, measures: indicators.slice(first, first + 3) }))

@@ -10,6 +10,7 @@ import type { Bench } from './bench.ts'
 import { type Comparison, comparableFactors } from './comparable-factors.ts'
 import type { LatentMeanView, Operations, RefusedComparison } from './contract.ts'
 import { entriesOf } from './entries.ts'
+import { familyOf } from './family.ts'
 import { type FittedEntry, fittedEntry, type Solution, solutionOf } from './solved-candidate.ts'
 
 type LatentMeans = Operations['latentMeans']
@@ -65,7 +66,7 @@ async function withNothingLetGo(bench: Bench, { plan, family, entry }: FittedEnt
     change: changes
   }
   const project = bench.requireProject()
-  const alone = { candidates: [strict], generated: new Set<string>(), origins: new Map() }
+  const alone = familyOf({ ...plan, candidates: [strict], ladders: [] })
   const [other] = entriesOf(plan, project.data(), bench.parts.version, alone)
   const { cells, sample, digest } = other!
   const { convention } = plan.estimation

@@ -130,7 +130,7 @@ export async function climbOn(
     ...plan,
     candidates: [...plan.candidates, ...(plan.candidates.some((c) => c.name === partial.name) ? [] : [partial]), ...fresh]
   }
-  await place.compare({ ...known, ladders: [...known.ladders, ladder] }, names)
+  await place.compare({ ...known, ladders: [...known.ladders, ladder] }, ladder.rungs)
   return ladder
 }
 

@@ -69,7 +69,7 @@ export function familyOrder({ members, sizes, known }: FamilyInput): FamilyOrder
   eachPair(df, (general, restricted) => {
     if (df[general]! < df[restricted]!) order.learn(general, restricted, false, 'constraints')
   })
-  for (const pair of known) learnKnown(order, pair)
+  for (const pair of known) learnKnown(order, pair, df)
   learnConstraints(order, prepared, df)
   learnFits(order, members, df)
   const refits = learnRefits(order, prepared, df)
@@ -86,9 +86,9 @@ function eachPair(df: readonly number[], visit: (general: number, restricted: nu
   }
 }
 
-function learnKnown(order: Order, { general, restricted, relation, proof }: KnownPair): void {
+function learnKnown(order: Order, { general, restricted, relation, proof }: KnownPair, df: readonly number[]): void {
   order.learn(restricted, general, relation !== 'not nested', proof)
-  if (relation === 'equivalent') order.learn(general, restricted, true, proof)
+  if (df[general] === df[restricted]) order.learn(general, restricted, relation !== 'not nested', proof)
 }
 
 function learnConstraints(order: Order, prepared: readonly PreparedModel[], df: readonly number[]): void {

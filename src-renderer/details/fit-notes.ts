@@ -36,8 +36,8 @@ export function fitSections(r: CandidateResult): FitSection[] {
       note: r.plugIn === null ? null : consistentNote,
       lines: [
         line('RMSEA', r.rmsea.estimate, bounded(r.rmsea.estimate), interval(r)),
-        line('p, close fit (at most .05)', r.rmsea.closeFitP, probability(r.rmsea.closeFitP)),
-        line('p, not-close fit (at least .08)', r.rmsea.notCloseFitP, probability(r.rmsea.notCloseFitP)),
+        line('p, close fit (≤ .05)', r.rmsea.closeFitP, probability(r.rmsea.closeFitP)),
+        line('p, not-close (≥ .08)', r.rmsea.notCloseFitP, probability(r.rmsea.notCloseFitP)),
         line('CFI', r.cfi, bounded(r.cfi)),
         line('TLI', r.tli, bounded(r.tli)),
         line('SRMR', r.srmr, bounded(r.srmr), 'covariances'),

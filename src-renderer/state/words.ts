@@ -73,6 +73,21 @@ export function improperFindings(cautions: readonly Caution[]): Caution[] {
   return cautions.filter(({ code }) => improper.includes(code))
 }
 
+/** Bounds at zero for the variances that findings say are negative, in every group. */
+export function boundsFor(findings: readonly Caution[]): Change[] {
+  const parts: Readonly<Record<string, CellPart>> = {
+    'negative-residual-variance': 'residual variance',
+    'negative-factor-variance': 'factor variance'
+  }
+  const cells = findings.flatMap(({ code, cell }) => {
+    const part = parts[code]
+    return part === undefined || cell === null ? [] : [{ part, of: cell }]
+  })
+  return cells
+    .filter((one, at) => cells.findIndex((other) => other.part === one.part && other.of.join() === one.of.join()) === at)
+    .map((cell) => ({ do: 'bound', cell, atLeast: 0, atMost: null, group: null }))
+}
+
 /** The state of a candidate in two words at most; a solution that is improper or has cautions says so. */
 export function stateInWords(state: CandidateView['state'], cautions: readonly Caution[]): string {
   if (state !== 'fitted' || cautions.length === 0) return state

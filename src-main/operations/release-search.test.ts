@@ -224,3 +224,42 @@ describe('the search where the reference indicator itself differs', () => {
     await workbench.close()
   })
 })
+
+describe('the search among structural equalities', () => {
+  const rows = fileURLToPath(new URL('../../fixtures/two-factors/two-factors.csv', import.meta.url))
+  const released = async (set: string, scaling: string) => {
+    const path = join(folder, 'structure.yaml')
+    writeFileSync(
+      path,
+      `study: Structure
+data: { file: '${rows}', indicators: [y1, y2, y3, y4, y5, y6], group: group }
+candidates:
+  Two:
+    factors: { First: [y1, y2, y3], Second: [y4, y5, y6] }
+    scaling: ${scaling}
+ladders:
+  Groups: { invariance of: Two, across: group, through: scalar, and: [${set}] }
+`
+    )
+    const { workbench } = startBench(folder)
+    await done(workbench, 'openPlan', { path })
+    const input = { ladder: `Groups, ${set}`, rung: `Two, scalar, equal ${set}` }
+    const { search } = await done(workbench, 'releaseSearch', input)
+    await workbench.close()
+    return search
+  }
+
+  it.each(['factor means', 'factor variances'])(
+    'lets go of the same %s whatever sets the scale, and the step then holds',
+    async (set) => {
+      const searches = []
+      for (const scaling of ['first loading', 'factor variance', 'effects coding']) searches.push(await released(set, scaling))
+      for (const search of searches) {
+        expect(search.ended).toBe('the step holds')
+        expect(search.released.length).toBeGreaterThan(0)
+        expect(search.released.map(({ words }) => words)).toEqual(searches[0]!.released.map(({ words }) => words))
+        expect(search.otherReference?.agrees).toBe(true)
+      }
+    }
+  )
+})

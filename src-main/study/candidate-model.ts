@@ -219,7 +219,7 @@ class CellBuilder {
 
   /** Fixes what sets each factor's scale, or makes the equations of effects coding. */
   private scale(): void {
-    const { scaling, factors, equal } = this.candidate
+    const { scaling, factors } = this.candidate
     const meansCoded = new Set<string>()
     for (const factor of factors) {
       this.groups.forEach((_, g) => {
@@ -230,7 +230,7 @@ class CellBuilder {
         if (scaling === 'effects coding' && !(g > 0 && this.anyHeld(factor, g)))
           this.sumOf(this.loadingNodes(factor, g), factor.measures.length)
       })
-      this.scaleMeans(factor, equal, meansCoded)
+      this.scaleMeans(factor, meansCoded)
     }
   }
 
@@ -256,14 +256,15 @@ class CellBuilder {
    * Factor means: zero in the first group and free elsewhere once intercepts are held there; under effects coding free
    * everywhere with intercepts that sum to zero (of a factor that shares no indicator with one already coded so).
    */
-  private scaleMeans(factor: Factor, equal: readonly EqualSet[], coded: Set<string>): void {
+  private scaleMeans(factor: Factor, coded: Set<string>): void {
     const own = factor.measures.filter((measure) => this.indicators.includes(measure))
     if (!this.frame.means || own.length === 0) return
     const effects = this.candidate.scaling === 'effects coding' && own.every((indicator) => !coded.has(indicator))
     if (effects) for (const indicator of own) coded.add(indicator)
     this.groups.forEach((_, g) => {
       const estimable = g > 0 && own.some((indicator) => this.held('intercept', [indicator], g))
-      if (effects || (estimable && !equal.includes('factor means'))) this.node('factor mean', [factor.name], g)!.fixed = null
+      const likeFirst = this.held('factor mean', [factor.name], 0) && this.held('factor mean', [factor.name], g)
+      if (effects || (estimable && !likeFirst)) this.node('factor mean', [factor.name], g)!.fixed = null
       if (effects && !estimable) {
         this.sumOf(
           own.map((indicator) => this.node('intercept', [indicator], g)!),

@@ -82,17 +82,21 @@ export function releaseRound(
   return { candidates, chosen: candidates.find(({ adjustedP }) => adjustedP !== null && adjustedP < alpha) ?? null }
 }
 
-/** The tests of what the step ties across groups: equalities it added, and the reference loadings of factors whose loadings it made equal. */
+/**
+ * The tests of what the step ties across groups: equalities that it added; cells that it fixed at one number in all groups,
+ * because one group's was fixed for the sake of the scale; and reference loadings of factors whose loadings it made equal.
+ */
 function stepTests(lower: ModelCells, upper: ModelCells, tests: readonly ScoreTest[]): ScoreTest[] {
   const equalities = tests.filter((test) => {
     if (test.kind !== 'equality' || test.group === null) return false
     return isTied(upper, test) && !isTied(lower, test)
   })
   const tied = new Set(equalities.filter(({ part }) => isLoading(part)).map(({ of }) => of[1]))
-  const references = tests.filter(
-    (test) => test.kind === 'fixed cell' && isLoading(test.part) && tied.has(test.of[1]) && isReference(upper, test)
-  )
-  return [...equalities, ...references]
+  const fixed = tests.filter((test) => {
+    if (test.kind !== 'fixed cell' || !isFixedAlike(upper, test)) return false
+    return isLoading(test.part) ? tied.has(test.of[1]) && isReference(upper, test) : isFreeSomewhere(lower, test)
+  })
+  return [...equalities, ...fixed]
 }
 
 function isLoading(part: CellPart): boolean {
@@ -109,13 +113,25 @@ function isTied(cells: ModelCells, { part, of, group }: Place): boolean {
 }
 
 /**
- * A loading fixed at the same number other than 0 in all groups. Of two groups the later one stands for both: it is one
- * equality, whichever side is let go.
+ * Fixed at the same number in all groups. Of two groups the later one stands for both: it is one equality, whichever side
+ * is let go.
  */
-function isReference(cells: ModelCells, { part, of, group }: Place): boolean {
-  const values = cells.groups.map((one) => cellAt(cells, one, part, of))
-  const alike = values.every((value) => typeof value === 'number' && value !== 0 && value === values[0])
+function isFixedAlike(cells: ModelCells, { part, of, group }: Place): boolean {
+  const values = valuesAt(cells, part, of)
+  const alike = values.every((value) => typeof value === 'number' && value === values[0])
   return alike && (cells.groups.length > 2 || group === cells.groups.at(-1)!.name)
+}
+
+function isFreeSomewhere(cells: ModelCells, { part, of }: Place): boolean {
+  return valuesAt(cells, part, of).some((value) => typeof value === 'string')
+}
+
+function isReference(cells: ModelCells, { part, of }: Place): boolean {
+  return valuesAt(cells, part, of)[0] !== 0
+}
+
+function valuesAt(cells: ModelCells, part: CellPart, of: readonly string[]): (Cell | undefined)[] {
+  return cells.groups.map((group) => cellAt(cells, group, part, of))
 }
 
 function cellAt({ indicators, factors }: ModelCells, group: GroupCells, part: CellPart, of: readonly string[]): Cell | undefined {

@@ -284,8 +284,10 @@ export interface StabilityResult {
     counts: Record<Verdict, number>
     /** In which the step held. */
     share: number
-    /** The share that a step which is exactly true would have, for comparison; null where no plain test decides alone. */
+    /** The share that a step which is exactly true would have in resamples; null where no plain test decides alone. */
     expectedWhenExact: number | null
+    /** The share of new samples of the same size in which it would hold, had the population the misfit estimated here; null likewise. */
+    expectedInNewSamples: number | null
     sentence: string
   }[]
   rungs: {

@@ -5,6 +5,7 @@
  * they stand to each other, does not change with the data.
  */
 import { chiSquareUpper } from '../statistics/distributions/chi-square.ts'
+import { noncentralChiSquareLower } from '../statistics/distributions/noncentral-chi-square.ts'
 import type { ResampledFit } from '../statistics/resampling/ladder-resamples.ts'
 import type { CandidateResult, LadderResult, StepResult, Verdict } from '../study/result.ts'
 import type { Rules } from '../study/study.ts'
@@ -12,6 +13,8 @@ import type { LadderStep } from './climb.ts'
 import type { StabilityResult } from './contract.ts'
 import { ladderResult, type StepGround } from './ladder-result.ts'
 import { rungSentence, stabilityNote, stepSentence } from './stability-words.ts'
+
+type StabilityStep = StabilityResult['steps'][number]
 
 export interface ResampledLadder {
   name: string
@@ -84,7 +87,7 @@ export class StabilityTally {
           to: step.to,
           verdict: step.verdict,
           counts,
-          expectedWhenExact: expectedWhenExact(step, rules)
+          ...expectedShares(step, rules)
         }
         return { ...own, share: share(counts.holds, resamples), sentence: stepSentence(own, resamples) }
       }),
@@ -118,11 +121,22 @@ function onResample(result: CandidateResult, fit: ResampledFit): CandidateResult
 }
 
 /**
- * Of a step that is exactly true, the share of resamples in which its test would hold. Its difference in the data is the
- * square of a standard normal vector; that of a resample adds a second, independent one to it, so that it is distributed
- * as twice a chi-square. null where the test alone does not decide, or its reference is no plain chi-square.
+ * What a share of resamples can be held against; null where the test alone does not decide, or its reference is no plain
+ * chi-square.
+ *
+ * Of a step that is exactly true, the difference T in the data is the squared length of a standard normal vector; that of a
+ * resample adds a second, independent one, so that it is distributed as twice a chi-square. In new samples from a
+ * population with noncentrality T - df (its estimate, at least 0) the difference is a noncentral chi-square.
  */
-function expectedWhenExact({ difference }: StepResult, rules: Rules): number | null {
-  if (difference === null || rules.decideBy !== 'difference test' || difference.method === 'boundary mixture') return null
-  return 1 - chiSquareUpper(difference.critical / 2, difference.df)
+function expectedShares(
+  { difference }: StepResult,
+  rules: Rules
+): Pick<StabilityStep, 'expectedWhenExact' | 'expectedInNewSamples'> {
+  if (difference === null || rules.decideBy !== 'difference test' || difference.method === 'boundary mixture')
+    return { expectedWhenExact: null, expectedInNewSamples: null }
+  const { T, df, critical } = difference
+  return {
+    expectedWhenExact: 1 - chiSquareUpper(critical / 2, df),
+    expectedInNewSamples: noncentralChiSquareLower(critical, df, Math.max(0, T - df))
+  }
 }

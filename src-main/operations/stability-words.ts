@@ -29,7 +29,14 @@ const inTheData: Record<Verdict, string> = {
 }
 
 export function stepSentence(
-  step: { from: string; to: string; verdict: Verdict; counts: Record<Verdict, number>; expectedWhenExact: number | null },
+  step: {
+    from: string
+    to: string
+    verdict: Verdict
+    counts: Record<Verdict, number>
+    expectedWhenExact: number | null
+    expectedInNewSamples: number | null
+  },
   resamples: number
 ): string {
   const others = otherVerdicts
@@ -38,10 +45,16 @@ export function stepSentence(
   const held = `The step from ${step.from} to ${step.to} held in ${percent(step.counts.holds, resamples)} of ${whole(resamples)} resamples`
   const rest = others.length === 0 ? '' : `, ${[...others.slice(0, -1), `and ${others.at(-1)!}`].join(', ')}`
   const yardstick =
-    step.expectedWhenExact === null
+    step.expectedWhenExact === null || step.expectedInNewSamples === null
       ? ''
-      : ` A step that is exactly true would hold in about ${Math.round(100 * step.expectedWhenExact)}% of such resamples.`
+      : ` A step that is exactly true would hold in ${about(step.expectedWhenExact)} of such resamples; with the misfit estimated from these data, it would hold in ${about(step.expectedInNewSamples)} of new samples of this size.`
   return `${held}${rest}; in the data themselves ${inTheData[step.verdict]}.${yardstick}`
+}
+
+/** "about 43%", "less than 1%", "more than 99%" */
+function about(share: number): string {
+  if (share < 0.01) return 'less than 1%'
+  return share > 0.99 ? 'more than 99%' : `about ${Math.round(100 * share)}%`
 }
 
 export function rungSentence(

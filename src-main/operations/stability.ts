@@ -23,7 +23,7 @@ type Input = Operations['stability']['input']
 /** A chunk of resamples is meant to keep a thread busy for about so long: often enough to tell progress. */
 const chunkMilliseconds = 300
 const firstChunk = 5
-const largestChunk = 250
+const largestChunk = 100
 
 /**
  * @throws InputError where there are no cases to resample, the ladder is unknown or not fitted yet, or the work was

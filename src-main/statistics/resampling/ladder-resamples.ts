@@ -18,8 +18,8 @@ import type { SampleMoments } from '../moments/sample-moments.ts'
 import { drawWeights, resampleGenerator } from './case-weights.ts'
 import { type CaseSample, drawnRows, type WeightedMoments, weightedMoments } from './weighted-moments.ts'
 
-/** T is off by about N tolerance^2 / 2 where the search ends: some 1e-12. */
-const resampleScoring: ScoringSettings = Object.freeze({ tolerance: 1e-7, iterations: 200 })
+/** T is off by about N q tolerance^2 / 2 where the search ends: some 1e-8 at most. */
+const resampleScoring: ScoringSettings = Object.freeze({ tolerance: 1e-6, iterations: 200 })
 
 export interface ResampledRung {
   cells: ModelCells
@@ -106,6 +106,8 @@ interface Fitting {
   moments: SampleMoments
   objective: Objective
   minimum: Minimum
+  /** Converged, with every parameter determined. */
+  solved: boolean
 }
 
 interface Setting extends ResampleInput {
@@ -126,7 +128,7 @@ function fitResample(input: Setting, weights: Int32Array): ResampledFit[] {
   const rows = input.statistic === 'mean-scaled' ? input.samples.map((sample) => drawnRows(sample, weights)) : null
   const fits = fittings.map((fitting, i): ResampledFit => {
     if (fitting === null) return { ...blank, state: 'no moments' }
-    if (!hasSolution(fitting)) return blank
+    if (!fitting.solved) return blank
     const { sample, watched } = input.rungs[i]!
     return resampledFit(fitting, rows === null ? null : rows[sample]!, watched)
   })
@@ -174,25 +176,25 @@ function fitRung(model: CompiledModel, moments: SampleMoments, gamma: number[] |
   const objective = normalObjective(model, moments, 'normal')
   if (gamma !== null) {
     const minimum = minimiseWithin(objective, Float64Array.from(gamma), model.bounds, resampleScoring)
-    const fitting = { model, moments, objective, minimum }
-    if (hasSolution(fitting)) return fitting
+    if (isSolved(model, minimum)) return { model, moments, objective, minimum, solved: true }
   }
-  return { model, moments, objective, minimum: smallestMinimum(model, moments, objective).best }
+  const { best } = smallestMinimum(model, moments, objective)
+  return { model, moments, objective, minimum: best, solved: isSolved(model, best) }
 }
 
-function hasSolution({ minimum, model }: Fitting): boolean {
+function isSolved(model: CompiledModel, minimum: Minimum): boolean {
   return minimum.stop === 'converged' && undetermined(model, minimum).length === 0
 }
 
 /** The restricted model fits better than the one it is nested in: the search for the latter ended too high. */
 function isBelow(restricted: Fitting | null | undefined, general: Fitting | null | undefined): boolean {
-  if (restricted == null || general == null || !hasSolution(restricted) || !hasSolution(general)) return false
+  if (restricted == null || general == null || !restricted.solved || !general.solved) return false
   return restricted.minimum.value < general.minimum.value - 1e-7
 }
 
 function searched(fitting: Fitting): Fitting {
   const { best } = smallestMinimum(fitting.model, fitting.moments, fitting.objective)
-  return best.value < fitting.minimum.value ? { ...fitting, minimum: best } : fitting
+  return isSolved(fitting.model, best) && best.value < fitting.minimum.value ? { ...fitting, minimum: best } : fitting
 }
 
 /** @param rows the drawn cases, where the statistic is to be scaled */

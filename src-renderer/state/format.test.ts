@@ -1,5 +1,5 @@
 import { describe, expect, test } from 'vitest'
-import { bounded, fixed, plural, precise, probability, probabilityPhrase, signedBounded, timeLeft } from './format.ts'
+import { bounded, fixed, plural, precise, probability, probabilityPhrase, signedBounded, signedFixed, timeLeft } from './format.ts'
 
 describe('numbers as the window shows them', () => {
   test('values bounded by one lose their leading zero and keep three decimals', () => {
@@ -27,6 +27,15 @@ describe('numbers as the window shows them', () => {
 
   test('a difference shows its sign unless it rounds to zero', () => {
     expect([0.0014, -0.022, 0.0002, -0.0002].map((value) => signedBounded(value))).toEqual(['+.001', '\u2212.022', '.000', '.000'])
+  })
+
+  test('so does the change of a parameter, with as many decimals as asked for', () => {
+    expect([0.163, -0.191, 0.0002, null].map((value) => signedFixed(value, 3))).toEqual([
+      '+0.163',
+      '\u22120.191',
+      '0.000',
+      '\u2013'
+    ])
   })
 
   test('what does not apply is a dash, without a title', () => {

@@ -31,6 +31,12 @@ export function signedBounded(value: number | null): string {
   return value > 0 && /[1-9]/.test(text) ? `+${text}` : text
 }
 
+/** A change of a parameter, with its sign unless it rounds to zero: +0.163, −0.191, 0.000. */
+export function signedFixed(value: number | null, decimals: number): string {
+  const text = fixed(value, decimals)
+  return value !== null && value > 0 && /[1-9]/.test(text) ? `+${text}` : text
+}
+
 /** A probability alone: .042, < .001, > .999. */
 export function probability(p: number | null): string {
   if (p === null) return notApplicable

@@ -306,6 +306,14 @@ if (executable === null) {
         expect(await textOf(page.getByTestId('improper'))).toMatch(/residual variance of a is negative/)
         expect(await seriousProblems(page)).toEqual([])
         await takePictures(page, 'window-improper')
+        await page.getByRole('button', { name: 'Derive with it kept from falling below 0…' }).click()
+        const dialog = page.getByRole('dialog')
+        await dialog.getByText('keep the residual variance of a at least 0').waitFor()
+        await dialog.getByRole('button', { name: 'Add candidate' }).click()
+        await page.getByRole('button', { name: 'Fit 1 draft' }).click()
+        const bounded = candidate(page, 'All four, no variance below 0')
+        await expect.poll(() => bounded.getAttribute('data-state'), { timeout: patience }).toBe('fitted')
+        expect(await textOf(bounded)).not.toContain('improper')
       })
 
       test('a candidate without a solution says why, and what was tried', async () => {
@@ -350,6 +358,9 @@ if (executable === null) {
         expect(await dialog.getByLabel('robust').isChecked()).toBe(true)
         expect(await seriousProblems(page)).toEqual([])
         await takePictures(page, 'window-import')
+        await dialog.getByLabel('Change in fit that holds').selectOption('Chen 2007')
+        await dialog.getByText('CFI may fall by .010').waitFor()
+        await page.screenshot({ path: join(pictures, 'window-rules.png') })
         await dialog.getByRole('button', { name: 'Make the study' }).click()
         await page.getByRole('heading', { name: 'My own study' }).waitFor()
         expect((await host.ask('currentStudy', null))?.estimation).toMatchObject({
@@ -357,6 +368,7 @@ if (executable === null) {
           missing: 'full information',
           standardErrors: 'robust'
         })
+        expect((await host.ask('currentStudy', null))?.rules.changeInFit?.preset).toBe('Chen 2007')
         await page.getByText('Then start with a candidate').waitFor()
         expect(await textOf(page.getByTestId('missing'))).toContain('this study keeps every answer given')
         expect(await seriousProblems(page)).toEqual([])

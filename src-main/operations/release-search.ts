@@ -61,7 +61,7 @@ export async function releaseSearch(bench: Bench, { ladder, rung }: ReleaseSearc
         ladder,
         from: failed.lower,
         to: failed.upper,
-        rule: ruleWords(plan.rules.alpha),
+        rule: ruleWords(plan.rules.alpha, plan.estimation.statistic === 'mean-scaled'),
         rounds: search.rounds.map(roundView),
         released: search.released.map(testView),
         ended: search.ended,

@@ -6,13 +6,16 @@ import { keptAnchors, type ReleaseCandidate } from '../statistics/invariance/rel
 import { cellWords, listed } from '../statistics/model/cell-words.ts'
 import type { FailedStep, Search, SearchRound } from './release-rounds.ts'
 
-export function ruleWords(alpha: number): string {
+/** @param scaled the difference tests are scaled for answers that are not normal, which score tests are not */
+export function ruleWords(alpha: number, scaled: boolean): string {
+  const unscaled = scaled ? ' The score tests are those of normal theory, without scaling.' : ''
   const level = String(alpha).replace(/^0\./, '.')
   return (
     'In each round, every equality across groups that the step added is tested by itself, one group at a time (score test). ' +
     `Of those that leave every two groups at least ${keptAnchors === 2 ? 'two' : keptAnchors} indicators of each factor in common, the one with the largest ` +
     `statistic is let go if it is significant at alpha = ${level} after Holm's adjustment over the round; the model is then fitted again. ` +
-    "The search ends when the step holds by the study's rules, or when no such equality is significant."
+    "The search ends when the step holds by the study's rules, or when no such equality is significant." +
+    unscaled
   )
 }
 

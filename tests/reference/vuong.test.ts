@@ -2,13 +2,20 @@
  * Models that are not nested: fixtures/reference/09, by the definitions of Vuong (1989). Judges (Hartigan 1977) for two
  * structures that can be told apart; attitudes (Chatterjee & Price 1977) for two that overlap and cannot.
  */
+import { readFileSync } from 'node:fs'
+import { join } from 'node:path'
+import { fileURLToPath } from 'node:url'
 import { describe, expect, it } from 'vitest'
+import { compareStudy } from '../../src-main/operations/compare-study.ts'
+import { readPlanFile } from '../../src-main/operations/open-study.ts'
 import { type FittedModel, notNestedTests } from '../../src-main/statistics/comparison/not-nested.ts'
 import { casewiseLogLikelihoods } from '../../src-main/statistics/estimation/casewise-likelihood.ts'
 import { normalObjective } from '../../src-main/statistics/estimation/normal-likelihood.ts'
 import { fitModel } from '../../src-main/statistics/fit/fit.ts'
 import type { FitResult } from '../../src-main/statistics/fit/fit-result.ts'
 import { compileModel } from '../../src-main/statistics/model/compile.ts'
+import type { LadderPlan } from '../../src-main/study/study.ts'
+import { inlineCrew } from '../../src-main/workers/inline-crew.ts'
 import { type Example, exampleCells, exampleMoments, readExample } from './examples.ts'
 
 interface Side {
@@ -106,5 +113,45 @@ describe.each(['09a_vuong_judges.json', '09b_vuong_attitude_overlapping.json'])(
     near(turned.z!.z, -tests.z!.z, 1e-9, 'z')
     near(turned.z!.firstBetter, tests.z!.secondBetter, 1e-9, 'p')
     near(turned.distinguishable!.p, tests.distinguishable!.p, 1e-9, 'p of being told apart')
+  })
+})
+
+/** The first step of a fixture's plan; `ladder` takes the place of its own ladders. */
+async function firstStep(path: string, ladder?: LadderPlan) {
+  const file = join(fileURLToPath(new URL('../../fixtures/', import.meta.url)), path)
+  const { plan, data } = await readPlanFile(file, async (name) => readFileSync(name))
+  const { ladders } = await compareStudy(
+    {
+      plan: { ...plan, ladders: ladder === undefined ? plan.ladders : [ladder] },
+      data,
+      origins: new Map(),
+      names: null,
+      memory: { fits: new Map(), relations: new Map() },
+      version: '0.1.0'
+    },
+    inlineCrew
+  )
+  return ladders[0]!.steps[0]!
+}
+
+describe('a step of a plan between candidates that are not nested', () => {
+  it('has the casewise tests in place of a chi-square difference, signed as the other differences are', async () => {
+    const { expected } = readExample<Vuong>('09a_vuong_judges.json')
+    const step = await firstStep('judges/not-nested.yaml')
+    expect(step).toMatchObject({ relation: 'not nested', verdict: 'no test', noTest: 'not nested', difference: null })
+    expect(step.notNested).toMatchObject({ favours: 'Structure A' })
+    near(step.notNested!.z!, -expected.vuong_nonnested.z_divisor_n, 1e-5, 'z')
+    near(step.notNested!.pFrom!, expected.vuong_nonnested.p_one_sided_A_better, 1e-5, 'p of A')
+    expect(step.deltaBic).toBeGreaterThan(step.notNested!.bicInterval.lower)
+    expect(step.deltaBic).toBeLessThan(step.notNested!.bicInterval.upper)
+    expect(step.because).toMatch(
+      /^Structure B is not nested in Structure A, so no chi-square difference .* Structure A fits better/
+    )
+  })
+
+  it('has none on published summaries, and says why', async () => {
+    const step = await firstStep('congeneric/plan.yaml', { name: 'Aslant', rungs: ['one factor', 'two factors, parallel pairs'] })
+    expect(step).toMatchObject({ relation: 'not nested', notNested: null })
+    expect(step.because).toMatch(/Compare their AIC and BIC; Vuong's \(1989\) tests need the answers of each case/)
   })
 })

@@ -111,6 +111,19 @@ describe('a verdict', () => {
     expect(adjusted.difference!.T).toBeLessThan(adjusted.difference!.critical)
   })
 
+  it('holds where the upper rung only adds bounds that are not reached, and is refused where they cost fit', () => {
+    const loose = step(side('b', 20, 20))
+    expect(loose).toMatchObject({ verdict: 'holds', difference: null, relation: 'nested' })
+    expect(loose.because).toBe(
+      'b differs from a by bounds alone, and these data do not press against them: both have the same fit, so nothing is given up.'
+    )
+    const tight = step(side('b', 23.214, 20))
+    expect(tight).toMatchObject({ verdict: 'no test', noTest: 'only bounds differ', difference: null })
+    expect(tight.because).toBe(
+      'b differs from a by bounds alone: they take no degrees of freedom and raise T by 3.21, a difference that no chi-square difference test applies to.'
+    )
+  })
+
   it('holds between equivalent candidates, without a test', () => {
     const result = step(side('b', 20, 20), {}, { relation: { relation: 'equivalent', proof: 'refit' } })
     expect(result).toMatchObject({ verdict: 'holds', difference: null, relation: 'equivalent', proof: 'refit' })

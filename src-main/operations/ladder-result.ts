@@ -61,7 +61,7 @@ type StepTest = DifferenceTest & Pick<DifferenceResult, 'method' | 'scaling'> & 
 
 /** The test that is valid for this very pair; null where none is. */
 function testOf(ground: StepGround, rules: Rules): StepTest | null {
-  if (refusal(ground) !== null || ground.relation?.relation !== 'nested') return null
+  if (refusal(ground) !== null || ground.relation?.relation !== 'nested' || onlyBoundsDiffer(ground)) return null
   const plain = anyScaled(ground)
     ? scaledTest(ground, rules)
     : { ...normalDifference(sideOf(ground.upper!), sideOf(ground.lower!)), scaling: null, method: 'normal theory' as const }
@@ -139,7 +139,8 @@ function refusal({ from, to, lower, upper, sameMoments, relation }: StepGround):
   }
   switch (relation?.relation) {
     case 'nested':
-      return upper.T! < lower.T! - 1e-4 * (1 + lower.T!) ? localMinimum(from, to) : null
+      if (upper.T! < lower.T! - fitTolerance(lower.T!)) return localMinimum(from, to)
+      return onlyBoundsDiffer({ lower, upper }) && !sameFit(lower, upper) ? boundsReached(from, to, upper.T! - lower.T!) : null
     case 'equivalent':
       return null
     case 'reversed':
@@ -152,6 +153,27 @@ function refusal({ from, to, lower, upper, sameMoments, relation }: StepGround):
         short: 'not nested',
         sentence: `${to} is not nested in ${from}, so no chi-square difference between them has a known distribution.`
       }
+  }
+}
+
+/** Fits closer than this are the same: minima are found to a relative 1e-8 or better. */
+function fitTolerance(T: number): number {
+  return 1e-4 * (1 + T)
+}
+
+function sameFit(lower: CandidateResult, upper: CandidateResult): boolean {
+  return Math.abs(upper.T! - lower.T!) <= fitTolerance(lower.T!)
+}
+
+/** Nested with equal df (relation.ts). */
+function onlyBoundsDiffer({ lower, upper }: Pick<StepGround, 'lower' | 'upper'>): boolean {
+  return lower!.df === upper!.df
+}
+
+function boundsReached(from: string, to: string, rise: number): Refusal {
+  return {
+    short: 'only bounds differ',
+    sentence: `${to} differs from ${from} by bounds alone: they take no degrees of freedom and raise T by ${statistic(rise)}, a difference that no chi-square difference test applies to.`
   }
 }
 
@@ -195,6 +217,7 @@ function stepResult(ground: StepGround, test: StepTest | null, holmP: number | n
   if (refused?.short === 'not nested') return { ...step, ...casewise(ground, rules) }
   if (refused !== null) return step
   if (relation?.relation === 'equivalent') return { ...step, verdict: 'holds', because: equivalentSentence(from, to) }
+  if (onlyBoundsDiffer(ground)) return { ...step, verdict: 'holds', because: boundsNotReached(from, to) }
   if (test === null) return { ...step, noTest: 'the scaling of the difference is not defined', because: undefinedScaling }
   const difference = differenceResult(test, holmP, rules, upper!)
   return { ...step, difference, ...judge({ ...step, difference }, ground, rules) }
@@ -234,6 +257,10 @@ function differenceResult(
     critical: chiBarSquareQuantile(level, reference),
     rmsea: { estimate, lower, upper: top }
   }
+}
+
+function boundsNotReached(from: string, to: string): string {
+  return `${to} differs from ${from} by bounds alone, and these data do not press against them: both have the same fit, so nothing is given up.`
 }
 
 function equivalentSentence(from: string, to: string): string {

@@ -126,15 +126,31 @@ describe('bounds', () => {
     bounds: [{ label: 'phi_2_1', least, most: null }]
   })
 
-  it('that are not reached leave two models equivalent; one of them is by constraints within the other only', () => {
-    const order = familyOrder(familyOf([exampleCells(example, 'three_factor'), bounded(0)]))
+  it('make a model nested in the one without them, with equal df, whichever comes first', () => {
+    const family = [exampleCells(example, 'three_factor'), bounded(0)]
+    expect(familyOrder(familyOf(family)).pairs).toEqual([{ general: 0, restricted: 1, relation: 'nested', proof: 'constraints' }])
+    expect(familyOrder(familyOf([...family].reverse())).pairs).toEqual([
+      { general: 1, restricted: 0, relation: 'nested', proof: 'constraints' }
+    ])
+  })
+
+  it('that are not reached do not stand between models that refitting finds equivalent', () => {
+    const order = familyOrder(familyOf([exampleCells(example, 'three_factor_marker'), bounded(0)]))
     expect(order.pairs).toMatchObject([{ relation: 'equivalent', proof: 'refit' }])
   })
 
   it('keep out a model whose solution lies beyond them', () => {
-    const free = familyOf([exampleCells(example, 'three_factor')]).members[0]!
-    const order = familyOrder({ ...harman, members: [free, { ...free, cells: bounded(0.9) }] })
-    expect(order.pairs).toMatchObject([{ relation: 'not nested', proof: 'refit' }])
+    const order = familyOrder(familyOf([exampleCells(example, 'second_order'), bounded(0.9)]))
+    expect(order.pairs).toMatchObject([{ relation: 'not nested', proof: 'order of fit' }])
+    const [free, other] = familyOf([bounded(0.9), exampleCells(example, 'three_factor_marker')]).members
+    const alike = familyOrder({
+      ...harman,
+      members: [
+        { ...free!, T: 0, gamma: harman.members[0]!.gamma },
+        { ...other!, T: 0 }
+      ]
+    })
+    expect(alike.pairs).toMatchObject([{ relation: 'not nested', proof: 'refit' }])
   })
 
   it('are passed on to a model that fixes the cell within them', () => {

@@ -15,7 +15,7 @@
  * this: equivalent models imply the same moments, so whatever reproduces one reproduces the other.
  */
 import type { ModelCells } from '../model/cells.ts'
-import { type PreparedModel, prepareModel, withinByConstraints, withinByRefit } from './relation.ts'
+import { type PreparedModel, prepareModel, relationByConstraints, withinByRefit } from './relation.ts'
 
 /** One model of the family with its solution; all are fitted to the same moments. */
 export interface FamilyMember {
@@ -42,7 +42,7 @@ export interface FamilyInput {
 
 export type PairProof = 'constraints' | 'refit' | 'order of fit' | 'other pairs'
 
-/** One pair of members by their places: `general` has no more degrees of freedom than `restricted`. */
+/** One pair of members by their places: `general` has no more degrees of freedom than `restricted`; nested with equal df, only bounds differ. */
 export interface FamilyPair {
   general: number
   restricted: number
@@ -88,14 +88,16 @@ function eachPair(df: readonly number[], visit: (general: number, restricted: nu
 
 function learnKnown(order: Order, { general, restricted, relation, proof }: KnownPair, df: readonly number[]): void {
   order.learn(restricted, general, relation !== 'not nested', proof)
-  if (df[general] === df[restricted]) order.learn(general, restricted, relation !== 'not nested', proof)
+  if (df[general] === df[restricted]) order.learn(general, restricted, relation === 'equivalent', proof)
 }
 
 function learnConstraints(order: Order, prepared: readonly PreparedModel[], df: readonly number[]): void {
   eachPair(df, (general, restricted) => {
-    if (order.isWholly(restricted, general) || !withinByConstraints(prepared[general]!, prepared[restricted]!)) return
-    order.learn(restricted, general, true, 'constraints')
-    if (df[general] === df[restricted]) order.learn(general, restricted, true, 'constraints')
+    if (order.isWholly(restricted, general)) return
+    const proved = relationByConstraints(prepared[general]!, prepared[restricted]!)
+    if (proved === null) return
+    order.learn(restricted, general, proved !== 'reversed', 'constraints')
+    if (df[general] === df[restricted]) order.learn(general, restricted, proved !== 'nested', 'constraints')
   })
 }
 
@@ -136,9 +138,11 @@ function pairsOf(order: Order, df: readonly number[]): FamilyPair[] {
   const pairs: FamilyPair[] = []
   eachPair(df, (general, restricted) => {
     const within = order.contains(restricted, general)
-    const sameDf = df[general] === df[restricted]
-    const relation = !within ? 'not nested' : sameDf ? 'equivalent' : 'nested'
-    pairs.push({ general, restricted, relation, proof: order.proof(restricted, general) })
+    const holds = order.contains(general, restricted)
+    const relation = within && holds ? 'equivalent' : within || holds ? 'nested' : 'not nested'
+    if (holds && !within)
+      pairs.push({ general: restricted, restricted: general, relation, proof: order.proof(general, restricted) })
+    else pairs.push({ general, restricted, relation, proof: order.proof(restricted, general) })
   })
   return pairs
 }

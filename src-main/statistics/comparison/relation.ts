@@ -26,7 +26,7 @@ export interface RelationInput {
 }
 
 export interface RelationOutcome {
-  /** "reversed": the model given as general is the one that is nested in the other. */
+  /** "nested" with equal df: only bounds differ. "reversed": the model given as general is the one that is nested in the other. */
   relation: 'nested' | 'equivalent' | 'not nested' | 'reversed'
   proof: 'constraints' | 'refit'
 }
@@ -51,19 +51,29 @@ function reversed(outcome: RelationOutcome): RelationOutcome {
 
 function relate(general: PreparedModel, restricted: PreparedModel): RelationOutcome {
   if (general.frame !== restricted.frame) return { relation: 'not nested', proof: 'constraints' }
-  const relation = general.model.df === restricted.model.df ? 'equivalent' : 'nested'
-  if (withinByConstraints(general, restricted)) return { relation, proof: 'constraints' }
-  return { relation: withinByRefit(general, restricted) ? relation : 'not nested', proof: 'refit' }
+  const proved = relationByConstraints(general, restricted)
+  if (proved !== null) return { relation: proved, proof: 'constraints' }
+  if (!withinByRefit(general, restricted)) return { relation: 'not nested', proof: 'refit' }
+  return { relation: general.model.df === restricted.model.df ? 'equivalent' : 'nested', proof: 'refit' }
 }
 
-/** Whether constraints prove `restricted` nested in `general`, or with equal df equivalent to it. */
-export function withinByConstraints(general: PreparedModel, restricted: PreparedModel): boolean {
-  if (!contains(general, restricted)) return false
-  // A set in another of the same dimension is that other, but for bounds.
-  return general.model.df < restricted.model.df || restricted.model.bounds === null || contains(restricted, general)
+/**
+ * What constraints prove of two models of which `general` has no more degrees of freedom; null when nothing. A set within
+ * another of the same dimension is that other, but for bounds: with equal df "nested" says that only bounds differ.
+ */
+export function relationByConstraints(
+  general: PreparedModel,
+  restricted: PreparedModel
+): 'nested' | 'equivalent' | 'reversed' | null {
+  const within = contains(general, restricted)
+  if (general.model.df < restricted.model.df) return within ? 'nested' : null
+  if (general.model.bounds === null && restricted.model.bounds === null) return within ? 'equivalent' : null
+  const holds = contains(restricted, general)
+  if (within && holds) return 'equivalent'
+  return within ? 'nested' : holds ? 'reversed' : null
 }
 
-/** The same by refitting. */
+/** Whether refitting proves `restricted` nested in `general`, or with equal df equivalent to it. */
 export function withinByRefit(general: PreparedModel, restricted: PreparedModel): boolean {
   const sameDf = general.model.df === restricted.model.df
   return reproduces(general, restricted) && (!sameDf || reproduces(restricted, general))

@@ -264,8 +264,11 @@ if (executable === null) {
         ] as const) {
           await page.setViewportSize({ width, height: 900 })
           await page.evaluate(`document.documentElement.style.fontSize = '${size}'`)
-          const overflow = await page.evaluate('document.documentElement.scrollWidth - document.documentElement.clientWidth')
-          expect({ width, size, overflow }).toEqual({ width, size, overflow: 0 })
+          for (const tab of ['Data', 'Fit', 'What if', 'Estimates', 'Ladder']) {
+            await page.getByRole('tab', { name: tab, exact: true }).click()
+            const overflow = await page.evaluate('document.documentElement.scrollWidth - document.documentElement.clientWidth')
+            expect({ width, size, tab, overflow }).toEqual({ width, size, tab, overflow: 0 })
+          }
           const [left, middle] = await Promise.all([
             boxOf(page.getByTestId('candidate').first()),
             boxOf(page.getByTestId('rung').first())
@@ -360,6 +363,7 @@ if (executable === null) {
         await takePictures(page, 'window-import')
         await dialog.getByLabel('Change in fit that holds').selectOption('Chen 2007')
         await dialog.getByText('CFI may fall by .010').waitFor()
+        await dialog.getByText('CFI may fall by .010').scrollIntoViewIfNeeded()
         await page.screenshot({ path: join(pictures, 'window-rules.png') })
         await dialog.getByRole('button', { name: 'Make the study' }).click()
         await page.getByRole('heading', { name: 'My own study' }).waitFor()

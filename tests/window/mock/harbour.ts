@@ -6,6 +6,7 @@ import type {
   EstimateResult,
   LadderResult,
   Origin,
+  ScoreTestView,
   StepResult,
   StudyView
 } from '../../../src-main/operations/contract.ts'
@@ -78,10 +79,10 @@ function estimates(groups: (string | null)[]): EstimateResult[] {
         label: free && groups.length > 1 ? 'a' + i : null,
         estimate: value,
         standardError: free ? 0.043 + 0.003 * i : null,
-        lower: null,
-        upper: null,
+        lower: free ? value - 0.1 : null,
+        upper: free ? value + 0.1 : null,
         standardized: 0.62 + 0.03 * (i % 4),
-        standardizedError: null
+        standardizedError: 0.03
       }
     }),
     ...indicators.map((name, i): EstimateResult => {
@@ -94,10 +95,10 @@ function estimates(groups: (string | null)[]): EstimateResult[] {
         label: null,
         estimate: value,
         standardError: 0.031,
-        lower: null,
-        upper: null,
+        lower: value - 0.06,
+        upper: value + 0.06,
         standardized: 0.5,
-        standardizedError: null
+        standardizedError: 0.03
       }
     }),
     ...[0, 1, 2].map((k): EstimateResult => {
@@ -110,10 +111,10 @@ function estimates(groups: (string | null)[]): EstimateResult[] {
         label: null,
         estimate: 0.22 - 0.17 * k,
         standardError: 0.041,
-        lower: null,
-        upper: null,
+        lower: 0.14 - 0.17 * k,
+        upper: 0.3 - 0.17 * k,
         standardized: 0.41 - 0.3 * k,
-        standardizedError: null
+        standardizedError: 0.06
       }
     })
   ])
@@ -170,7 +171,13 @@ function result(view: CandidateView, f: Figures, weight: number): CandidateResul
             }
           ]
         : [],
-    convergence: { iterations: 9, largestGradient: 2e-10, starts: 1, minima: 1, tried: [] }
+    convergence: {
+      iterations: 9,
+      largestGradient: 2e-10,
+      starts: 1,
+      minima: 1,
+      tried: [{ start: 'ordinary', stop: 'converged', minimum: f.T / 912, iterations: 9 }]
+    }
   }
 }
 
@@ -412,8 +419,25 @@ export function harbourStudy(): StudyView {
         digest: 'sha256:00',
         indicators,
         groups,
-        missing: { values: 14, cases: 14, patterns: [] },
-        normality: null,
+        missing: {
+          values: 14,
+          cases: 12,
+          patterns: [
+            { answered: indicators, n: 900 },
+            { answered: indicators.filter((name) => name !== 'calls'), n: 10 },
+            { answered: indicators.slice(0, 7), n: 2 }
+          ]
+        },
+        normality: {
+          sentence: 'Multivariate kurtosis does not depart detectably from that of normal data.',
+          groups: clinics.map((group, g) => ({
+            group,
+            n: 300 - g,
+            skewness: { value: 3.4 + 0.2 * g, chiSquare: 171.2, df: 165, p: 0.354 },
+            kurtosis: { value: 98.1 + 0.3 * g, expected: 98.3, z: -0.12, p: 0.904 },
+            indicators: indicators.map((name, i) => ({ name, skewness: 0.1 - 0.05 * (i % 5), kurtosis: -0.2 + 0.07 * (i % 4) }))
+          }))
+        },
         cautions: []
       },
       candidates: candidates.map((view, i) => result(view, figures[view.candidate.name]!, weights[i]!)),
@@ -432,4 +456,34 @@ export function harbourStudy(): StudyView {
       }))
     }
   }
+}
+
+/** Score tests as invented as the rest: an equality in every clinic, and one residual covariance. */
+export function harbourScoreTests(name: string): ScoreTestView[] {
+  const base = { p: 0.012, change: 0.21, expectedValue: 1.12, standardizedChange: 0.14 }
+  const equalities = clinics.map(
+    (group, g): ScoreTestView => ({
+      ...base,
+      kind: 'equality',
+      part: 'loading',
+      of: ['fatigue', 'Rest'],
+      group,
+      label: 'a1',
+      words: `the loading of fatigue on Rest in ${group}`,
+      statistic: 6.3 - g,
+      plausibility: 'stated'
+    })
+  )
+  const fixed: ScoreTestView = {
+    ...base,
+    kind: 'fixed cell',
+    part: 'residual covariance',
+    of: ['sleep', 'worry'],
+    group: null,
+    label: null,
+    words: 'the residual covariance of sleep with worry',
+    statistic: 11.4,
+    plausibility: 'far'
+  }
+  return ['Loadings equal', 'Intercepts equal'].includes(name) ? [...equalities, fixed] : [fixed]
 }

@@ -1,6 +1,6 @@
 /** A stand-in for the program, for developing the window: answers from the hand-made study, remembers what is added. */
 import type { Answer, Client, OperationName, Operations, StudyView, WorkEvent } from '../../../src-main/operations/contract.ts'
-import { harbourStudy } from './harbour.ts'
+import { harbourScoreTests, harbourStudy } from './harbour.ts'
 
 const wait = (ms: number): Promise<void> => new Promise((done) => setTimeout(done, ms))
 
@@ -56,6 +56,7 @@ export function mockClient(options: { empty?: boolean; slow?: boolean } = {}): C
       view = { ...view, candidates: view.candidates.map((c) => ({ ...c, state: 'fitted' as const })) }
       return view
     },
+    scoreTests: async ({ candidate }) => ({ leftOut: 3, tests: harbourScoreTests(candidate) }),
     cancelWork: async () => {
       cancelled = true
       return null

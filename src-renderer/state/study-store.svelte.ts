@@ -4,18 +4,28 @@
  * Components read from here and send commands; a command asks the program and puts its answer in `view`. Bad input
  * comes back as a problem for the component that asked; anything else that fails is a fault and shown as one.
  */
-import type { Answer, Client, OperationName, Operations, StudyView, WorkEvent } from '../../src-main/operations/contract.ts'
+import type {
+  Answer,
+  Client,
+  OperationName,
+  Operations,
+  ReleaseSearchView,
+  StabilityResult,
+  StudyView,
+  WorkEvent
+} from '../../src-main/operations/contract.ts'
 
 export type Problem = Extract<Answer<unknown>, { ok: false }>['problem']
 
 export interface RunningWork {
+  doing: 'Fitting' | 'Resampling'
   done: number
   total: number
   secondsLeft: number | null
   stopping: boolean
 }
 
-export const places = ['Ladder', 'Table', 'Data'] as const
+export const places = ['Ladder', 'Table', 'Family', 'Data'] as const
 export type Place = (typeof places)[number]
 
 type StudyOperation = {
@@ -33,6 +43,8 @@ export class StudyStore {
   /** The group that every list by group shows, where a candidate has it. */
   group = $state<string | null>(null)
   work = $state.raw<RunningWork | null>(null)
+  /** What the last resampling of a ladder of this study showed. */
+  stability = $state.raw<StabilityResult | null>(null)
   /** Bad input of a command that has no field of its own. */
   problem = $state.raw<Problem | null>(null)
   /** Something the program did not foresee. */
@@ -83,9 +95,32 @@ export class StudyStore {
   }
 
   async fit(names: string[] | null): Promise<void> {
-    this.work = { done: 0, total: names?.length ?? this.drafts.length, secondsLeft: null, stopping: false }
+    this.work = { doing: 'Fitting', done: 0, total: names?.length ?? this.drafts.length, secondsLeft: null, stopping: false }
     this.problem = await this.change('fitCandidates', { names })
     this.work = null
+  }
+
+  /** Searches what to let go of a failed step; the study with what was found is shown, its new ladder first. */
+  async searchReleases(input: Operations['releaseSearch']['input']): Promise<Answer<ReleaseSearchView>> {
+    this.work = { doing: 'Fitting', done: 0, total: 1, secondsLeft: null, stopping: false }
+    const answer = await this.ask('releaseSearch', input)
+    this.work = null
+    if (!answer.ok) return answer
+    const { search, view } = answer.value
+    this.#show(view)
+    this.ladder = search.partialLadder ?? this.ladder
+    return { ok: true, value: search }
+  }
+
+  /** Resamples a ladder; the trail that tells of it is fetched with it. */
+  async resample(input: Operations['stability']['input']): Promise<Answer<StabilityResult>> {
+    this.work = { doing: 'Resampling', done: 0, total: input.resamples, secondsLeft: null, stopping: false }
+    const answer = await this.ask('stability', input)
+    this.work = null
+    const current = await this.ask('currentStudy', null)
+    if (current.ok && current.value !== null) this.#show(current.value)
+    if (answer.ok) this.stability = answer.value
+    return answer
   }
 
   async stop(): Promise<void> {
@@ -110,7 +145,10 @@ export class StudyStore {
     this.fault = null
     if (!view.ladders.some((ladder) => ladder.name === this.ladder)) this.ladder = view.ladders.at(-1)?.name ?? null
     this.#chosen &&= sameStudy && this.selected !== null && names.includes(this.selected)
-    if (!sameStudy) this.place = 'Ladder'
+    if (!sameStudy) {
+      this.place = 'Ladder'
+      this.stability = null
+    }
     if (!this.#chosen) this.selected = this.#firstLook(view) ?? names[0] ?? null
   }
 
@@ -119,10 +157,10 @@ export class StudyStore {
   }
 
   #work(event: WorkEvent): void {
-    const stopping = this.work?.stopping ?? false
-    if (event.kind === 'started') this.work = { done: 0, total: event.total, secondsLeft: null, stopping }
+    const { stopping, doing } = this.work ?? { stopping: false, doing: 'Fitting' as const }
+    if (event.kind === 'started') this.work = { doing, done: 0, total: event.total, secondsLeft: null, stopping }
     else if (event.kind === 'fitted' || event.kind === 'resampled') {
-      this.work = { done: event.done, total: event.total, secondsLeft: event.secondsLeft, stopping }
+      this.work = { doing, done: event.done, total: event.total, secondsLeft: event.secondsLeft, stopping }
     } else this.work = null
   }
 }

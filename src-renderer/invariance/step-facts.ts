@@ -1,0 +1,78 @@
+/** What a step's verdict rests on, line by line. Pure; formatting only. */
+import type { DifferenceResult, EvidenceRatio, NotNestedResult, StepResult } from '../../src-main/operations/contract.ts'
+import { bounded, fixed, precise, probabilityPhrase } from '../state/format.ts'
+
+export interface Fact {
+  name: string
+  text: string
+  /** Full precision. */
+  title?: string | undefined
+}
+
+export function stepFacts({ difference, notNested, proof, relation }: StepResult): Fact[] {
+  return [
+    ...(difference === null ? [] : differenceFacts(difference)),
+    ...(notNested === null ? [] : notNestedFacts(notNested)),
+    ...(relation === null || proof === null ? [] : [{ name: 'Relation', text: relationInWords(relation, proof) }])
+  ]
+}
+
+function differenceFacts({ method, scaling, rmsea }: DifferenceResult): Fact[] {
+  const { estimate, lower, upper } = rmsea
+  const size =
+    estimate === null
+      ? []
+      : [
+          {
+            name: 'Size of the step',
+            text: `RMSEA of the difference ${bounded(estimate)} [${bounded(lower)}, ${bounded(upper)}]`,
+            title: `${precise(estimate)} [${precise(lower)}, ${precise(upper)}], 90% interval`
+          }
+        ]
+  const factor = scaling === null ? [] : [{ name: 'Scaling', text: fixed(scaling, 3), title: precise(scaling) }]
+  return [{ name: 'Test', text: testInWords(method) }, ...factor, ...size]
+}
+
+function testInWords(method: DifferenceResult['method']): string {
+  switch (method) {
+    case 'normal theory':
+      return 'chi-square difference, normal theory'
+    case 'scaled':
+      return 'scaled chi-square difference (Satorra & Bentler 2001)'
+    case 'strictly positive scaled':
+      return 'scaled chi-square difference, strictly positive form (Satorra & Bentler 2010)'
+    case 'boundary mixture':
+      return 'chi-square difference, referred to a mixture'
+  }
+}
+
+function notNestedFacts({ distinguishable, z, p, evidenceAic, evidenceBic }: NotNestedResult): Fact[] {
+  return [
+    ...(distinguishable === null
+      ? []
+      : [
+          {
+            name: 'Told apart?',
+            text: `n\u00a0ω² = ${fixed(distinguishable.statistic, 2)}, ${probabilityPhrase(distinguishable.p)}`,
+            title: precise(distinguishable.p)
+          }
+        ]),
+    ...(z === null ? [] : [{ name: 'Which fits better', text: `z = ${fixed(z, 2)}, ${probabilityPhrase(p)}`, title: precise(p) }]),
+    ...evidence('Evidence by AIC', evidenceAic),
+    ...evidence('Evidence by BIC', evidenceBic)
+  ]
+}
+
+function evidence(name: string, found: EvidenceRatio | null): Fact[] {
+  return found === null ? [] : [{ name, text: evidenceInWords(found), title: precise(found.ratio) }]
+}
+
+/** "12.4 times for Three factors"; beyond a million only that it is more. */
+export function evidenceInWords({ favours, ratio }: EvidenceRatio): string {
+  if (ratio === null || ratio > 1e6) return `over a million times for ${favours}`
+  return `${fixed(ratio, ratio < 100 ? 1 : 0)} times for ${favours}`
+}
+
+export function relationInWords(relation: NonNullable<StepResult['relation']>, proof: NonNullable<StepResult['proof']>): string {
+  return `${relation}, shown by ${proof === 'constraints' ? 'what each constrains' : 'fitting one to what the other implies'}`
+}

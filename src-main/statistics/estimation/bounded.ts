@@ -28,7 +28,8 @@ export function minimiseWithin(
   settings: ScoringSettings = ordinaryScoring
 ): Minimum {
   const open = minimise(objective, start, settings)
-  if (bounds === null || (open.stop === 'converged' && isWithin(open.gamma, bounds))) return open
+  const ended = open.stop === 'converged' || open.stop === 'iteration limit'
+  if (bounds === null || (ended && isWithin(open.gamma, bounds))) return open
   const from = [open.gamma, start].map((point) => clipped(point, bounds)).find((point) => !Number.isNaN(objective.evaluate(point)))
   if (from === undefined) return { ...open, stop: 'bad start', value: Number.NaN }
   return activeSet({ objective, bounds, settings }, from, open.iterations)

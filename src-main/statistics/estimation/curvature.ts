@@ -15,30 +15,63 @@ import { columnDot, wholeForm } from './cell-columns.ts'
 import { addSecondOrder } from './second-order.ts'
 import type { GroupWork, PatternWork } from './work.ts'
 
-/** Adds this group's expected second derivatives; the gradient must have been made before (it leaves [E, L] and the mean weights). */
+/** Adds this group's expected second derivatives; the gradient must have been made before (it leaves W, [E, L] and the mean weights). */
 export function addExpectedCurvature(work: GroupWork, curvature: Float64Array, q: number): void {
-  const { form: gram, size, u, v, c, s, meanWeight } = work
+  const { form: gram, size, c, s, meanWeight } = work
+  const count = c.length
+  const pairs = new Float64Array(count * count)
+  const moving = indicesWhere(count, (i) => c[i]! !== 0)
+  const shifting = indicesWhere(count, (i) => s[i]! >= 0 && meanWeight[i]! !== 0)
   for (const pattern of work.patterns) {
     pad(pattern, pattern.w, work.p, work.padded)
     wholeForm(work.padded, work.columns, work.p, size, work.product, gram)
-    const weight = work.weight * pattern.share
-    for (let i = 0; i < u.length; i++) {
-      const ui = u[i]! * size
-      const vi = v[i]! * size
-      const si = s[i]! * size
-      const ci = c[i]!
-      for (let j = 0; j <= i; j++) {
-        let value = 0
-        if (ci !== 0 && c[j]! !== 0) {
-          const uj = u[j]!
-          const vj = v[j]!
-          value = 2 * ci * c[j]! * (gram[ui + uj]! * gram[vi + vj]! + gram[ui + vj]! * gram[vi + uj]!)
-        }
-        if (si >= 0 && s[j]! >= 0) value += 2 * meanWeight[i]! * meanWeight[j]! * gram[si + s[j]!]!
-        if (value !== 0) addPair(work, curvature, q, i, j, weight * value)
+    const weight = 2 * work.weight * pattern.share
+    addCovariancePairs(work, moving, weight, pairs)
+    for (let x = 0; x < shifting.length; x++) {
+      const i = shifting[x]!
+      const row = s[i]! * size
+      const factor = weight * meanWeight[i]!
+      for (let y = 0; y <= x; y++) {
+        const j = shifting[y]!
+        pairs[i * count + j]! += factor * meanWeight[j]! * gram[row + s[j]!]!
       }
     }
   }
+  for (let i = 0; i < count; i++) {
+    for (let j = 0; j <= i; j++) {
+      const value = pairs[i * count + j]!
+      if (value !== 0) addPair(work, curvature, q, i, j, value)
+    }
+  }
+}
+
+/** pairs (lower triangle) += weight c1 c2 (G[u1,u2] G[v1,v2] + G[u1,v2] G[v1,u2]) over the cells that move Sigma. */
+function addCovariancePairs(
+  { form: gram, size, u, v, c }: GroupWork,
+  moving: Int32Array,
+  weight: number,
+  pairs: Float64Array
+): void {
+  const count = c.length
+  for (let x = 0; x < moving.length; x++) {
+    const i = moving[x]!
+    const ui = u[i]! * size
+    const vi = v[i]! * size
+    const factor = weight * c[i]!
+    const row = i * count
+    for (let y = 0; y <= x; y++) {
+      const j = moving[y]!
+      const uj = u[j]!
+      const vj = v[j]!
+      pairs[row + j]! += factor * c[j]! * (gram[ui + uj]! * gram[vi + vj]! + gram[ui + vj]! * gram[vi + uj]!)
+    }
+  }
+}
+
+function indicesWhere(count: number, holds: (i: number) => boolean): Int32Array {
+  const found: number[] = []
+  for (let i = 0; i < count; i++) if (holds(i)) found.push(i)
+  return Int32Array.from(found)
 }
 
 /** Adds this group's observed second derivatives, with or without those of Sigma and mu themselves; the gradient must have been made before. */
@@ -51,7 +84,7 @@ export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q
   for (const pattern of work.patterns) {
     pad(pattern, pattern.w, p, work.padded)
     wholeForm(work.padded, columns, p, size, work.product, gram)
-    pad(pattern, residualForm(pattern), p, work.padded)
+    pad(pattern, pattern.q, p, work.padded)
     wholeForm(work.padded, columns, p, size, work.product, square)
     z.fill(0)
     for (let i = 0; i < pattern.k; i++) z[pattern.observed[i]!] = pattern.z[i]!
@@ -72,19 +105,6 @@ export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q
   addSecondOrder(work, (i, j, value) => {
     addPair(work, curvature, q, i, j, work.weight * value)
   })
-}
-
-/** Q = W D W = (W D) W, k x k. */
-function residualForm({ k, w, wd }: PatternWork): Float64Array {
-  const q = new Float64Array(k * k)
-  for (let i = 0; i < k; i++) {
-    for (let j = 0; j < k; j++) {
-      let sum = 0
-      for (let l = 0; l < k; l++) sum += wd[i * k + l]! * w[l * k + j]!
-      q[i * k + j] = sum
-    }
-  }
-  return q
 }
 
 /** 2 tr(dSigma1 W dSigma2 Q) - tr(W dSigma1 W dSigma2) */

@@ -13,13 +13,14 @@
  * in the columns of cell-columns.ts, so no derivative matrix is ever formed. The information of gamma is (N/2) times the
  * second derivatives (curvature.ts). Convention: N = sum n_g, or sum (n_g - 1) under Wishart.
  */
-import { cholesky, choleskyInverse, dotRows, logDeterminant, mirrorLower, multiply } from '../matrix/symmetric.ts'
+import { mirrorLower, multiply } from '../matrix/symmetric.ts'
 import type { CompiledGroup, CompiledModel } from '../model/compile.ts'
 import { type GroupState, groupState, impliedMoments } from '../model/implied-moments.ts'
 import type { GroupMoments, Pattern, SampleMoments } from '../moments/sample-moments.ts'
 import { cellColumns, columnDot, formEntry, sideBySide } from './cell-columns.ts'
 import { addExpectedCurvature, addObservedCurvature } from './curvature.ts'
-import type { GroupWork, PatternWork } from './work.ts'
+import { patternValue, prepareDerivatives, prepareStructure } from './pattern-value.ts'
+import type { GroupWork, PatternWork, StructureWork } from './work.ts'
 
 export type Convention = 'normal' | 'wishart'
 /** tangent: observed, but with the second derivatives of the moments themselves left out (Delta' A Delta of scaling-missing.ts). */
@@ -53,12 +54,14 @@ export function effectiveSize(n: number, convention: Convention): number {
   return convention === 'wishart' ? n - 1 : n
 }
 
-/** Builds the objective; throws a plain Error when S is not positive definite (the data were to be checked before). */
-export function normalObjective(model: CompiledModel, moments: SampleMoments, convention: Convention): Objective {
+/**
+ * Builds the objective; `twin` keeps to the dense way everywhere, for tests of the short one (pattern-value.ts). Throws a plain Error when S is not positive definite (the data were to be checked before).
+ */
+export function normalObjective(model: CompiledModel, moments: SampleMoments, convention: Convention, twin?: 'dense'): Objective {
   const total = moments.groups.reduce((sum, g) => sum + effectiveSize(g.n, convention), 0)
   const groups = model.groups.map((group, g) => {
     const sample = moments.groups[g]!
-    return groupWork(model, group, sample, effectiveSize(sample.n, convention) / total)
+    return groupWork(model, group, sample, effectiveSize(sample.n, convention) / total, twin)
   })
   return {
     parameters: model.parameters,
@@ -87,12 +90,18 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
   }
 }
 
-function groupWork(model: CompiledModel, group: CompiledGroup, sample: GroupMoments, weight: number): GroupWork {
+function groupWork(
+  model: CompiledModel,
+  group: CompiledGroup,
+  sample: GroupMoments,
+  weight: number,
+  twin: 'dense' | undefined
+): GroupWork {
   const p = model.indicators.length
   const m = model.factors.length
   const size = p + 2 * m
   const array = (length: number) => new Float64Array(length)
-  const patterns = patternsOf(sample, p).map((pattern) => patternWork(pattern, p, sample.n, model.meanStructure))
+  const patterns = patternsOf(sample, p).map((pattern) => patternWork(pattern, p, m, sample.n, model.meanStructure))
   const work: GroupWork = {
     group,
     state: groupState(p, m),
@@ -111,9 +120,10 @@ function groupWork(model: CompiledModel, group: CompiledGroup, sample: GroupMome
     meanWeight: array(group.free.length),
     plain: group.free.every((cell) => cell.gammas.length === 1 && cell.weights[0] === 1),
     gamma: Int32Array.from(group.free, (cell) => cell.gammas[0] ?? -1),
-    scratch: { chol: array(p * p), data: array(p * p), first: new Int32Array(p) }
+    structure: twin === 'dense' ? null : structureWork(group, p, m),
+    scratch: { chol: array(p * p), first: new Int32Array(p), projection: array(m) }
   }
-  work.unrestricted = patternSum(work, sample.covariance, sample.mean)
+  work.unrestricted = patternSum(work, sample.covariance, sample.mean, false)
   if (Number.isNaN(work.unrestricted)) throw new Error('a sample covariance matrix is not positive definite')
   return work
 }
@@ -124,7 +134,16 @@ function patternsOf(sample: GroupMoments, p: number): Pattern[] {
   return [{ observed: Int32Array.from({ length: p }, (_, i) => i), n: sample.n, mean: sample.mean, covariance: sample.covariance }]
 }
 
-function patternWork({ observed, n, mean, covariance }: Pattern, p: number, total: number, means: boolean): PatternWork {
+/** Theta diagonal whatever gamma, and few enough factors that the short way is shorter. */
+function structureWork(group: CompiledGroup, p: number, m: number): StructureWork | null {
+  const covaries = group.free.some((cell) => cell.matrix === 'theta' && cell.row !== cell.column)
+  const fixed = group.theta.some((value, at) => value !== 0 && at % (p + 1) !== 0)
+  if (covaries || fixed || m === 0 || 2 * m > p) return null
+  return { root: new Float64Array(m * m), kernel: new Float64Array(m * m), load: new Float64Array(p * m) }
+}
+
+function patternWork(pattern: Pattern, p: number, m: number, total: number, means: boolean): PatternWork {
+  const { observed, n, mean, covariance } = pattern
   const k = observed.length
   return {
     k,
@@ -134,7 +153,12 @@ function patternWork({ observed, n, mean, covariance }: Pattern, p: number, tota
     sample: covariance,
     sampleMean: means ? mean : null,
     w: new Float64Array(k * k),
-    wd: new Float64Array(k * k),
+    q: new Float64Array(k * k),
+    ready: false,
+    dense: true,
+    half: new Float64Array(k * m),
+    image: new Float64Array(k * m),
+    precision: new Float64Array(k),
     d: new Float64Array(k),
     z: new Float64Array(k)
   }
@@ -162,7 +186,7 @@ function baselineDiscrepancy(work: GroupWork): number {
     const d = means ? sampleMean![a]! - mean[i]! : 0
     sigma[i * p + i]! += (share * (sample[a * k + a]! + d * d)) / n[i]!
   })
-  return patternSum(work, sigma, means ? mean : null) - work.unrestricted
+  return patternSum(work, sigma, means ? mean : null, false) - work.unrestricted
 }
 
 /** -1/2 n_g [answers a case ln(2 pi) + h_g] */
@@ -171,44 +195,20 @@ function unrestrictedLogLikelihood({ weight, patterns, unrestricted }: GroupWork
   return -((weight * total) / 2) * (answers * Math.log(2 * Math.PI) + unrestricted)
 }
 
-/** F_g, leaving W, W D and W d of every pattern in the work space. */
+/** F_g, leaving in the work space what the derivatives need. */
 function groupDiscrepancy(work: GroupWork, gamma: Float64Array, regressions: boolean): number {
   if (!impliedMoments(work.group, gamma, regressions, work.state)) return Number.NaN
-  return patternSum(work, work.state.sigma, work.state.mu) - work.unrestricted
+  return patternSum(work, work.state.sigma, work.state.mu, prepareStructure(work, work.state)) - work.unrestricted
 }
 
 /** sum_k (n_k / n_g) [ln|Sigma_k| + tr(D_k W_k)] at the given moments; NaN where Sigma_k is not positive definite. */
-function patternSum(work: GroupWork, sigma: Float64Array, mu: Float64Array | null): number {
+function patternSum(work: GroupWork, sigma: Float64Array, mu: Float64Array | null, structured: boolean): number {
   let sum = 0
   for (const pattern of work.patterns) {
-    sum += pattern.share * patternValue(work, pattern, sigma, mu)
+    sum += pattern.share * patternValue(work, pattern, sigma, mu, structured)
     if (Number.isNaN(sum)) return Number.NaN
   }
   return sum
-}
-
-function patternValue({ p, scratch }: GroupWork, pattern: PatternWork, sigma: Float64Array, mu: Float64Array | null): number {
-  const { k, observed, w, wd, d, z, sample, sampleMean } = pattern
-  const { chol, data, first } = scratch
-  for (let i = 0; i < k; i++) {
-    const row = observed[i]! * p
-    for (let j = 0; j <= i; j++) chol[i * k + j] = sigma[row + observed[j]!]!
-    for (let j = i + 1; j < k; j++) chol[i * k + j] = 0
-  }
-  if (!cholesky(chol, k, chol)) return Number.NaN
-  const logDet = logDeterminant(chol, k)
-  choleskyInverse(chol, k, w, first)
-  let moments = sample
-  if (sampleMean !== null && mu !== null) {
-    for (let i = 0; i < k; i++) d[i] = sampleMean[i]! - mu[observed[i]!]!
-    for (let i = 0; i < k; i++) for (let j = 0; j < k; j++) data[i * k + j] = sample[i * k + j]! + d[i]! * d[j]!
-    moments = data
-  }
-  multiply(w, moments, k, k, k, wd)
-  multiply(w, d, k, k, 1, z)
-  let trace = 0
-  for (let i = 0; i < k; i++) trace += wd[i * k + i]!
-  return logDet + trace
 }
 
 /** Sums Omega and z over the patterns, then takes the entries of B' Omega B that the free cells need. */
@@ -233,16 +233,16 @@ function addGradient(work: GroupWork, gradient: Float64Array): void {
   }
 }
 
-function sumPatterns({ p, patterns, omega, z }: GroupWork): void {
+function sumPatterns(work: GroupWork): void {
+  const { p, patterns, omega, z } = work
   omega.fill(0)
   z.fill(0)
   for (const pattern of patterns) {
-    const { k, observed, w, wd, share } = pattern
+    prepareDerivatives(work, pattern)
+    const { k, observed, w, q, share } = pattern
     for (let i = 0; i < k; i++) {
       const row = observed[i]! * p
-      for (let j = 0; j <= i; j++) {
-        omega[row + observed[j]!]! += share * (w[i * k + j]! - dotRows(wd, i * k, w, j * k, k))
-      }
+      for (let j = 0; j <= i; j++) omega[row + observed[j]!]! += share * (w[i * k + j]! - q[i * k + j]!)
       z[observed[i]!]! += share * pattern.z[i]!
     }
   }

@@ -148,7 +148,7 @@ function findDirection(search: Search, gradient: Float64Array): number {
 /** Takes the longest of 1, 1/2, 1/4 ... that descends enough (Armijo), rounding in F allowed for; false when none does. */
 function lineSearch(search: Search, point: Minimum, slope: number): boolean {
   const { trial, direction, objective } = search
-  const noise = 1e-14 * (1 + Math.abs(point.value))
+  const noise = 1e-13 * (1 + Math.abs(point.value))
   for (let i = 0, length = 1; i < halvings; i++, length /= 2) {
     for (let k = 0; k < trial.length; k++) trial[k] = point.gamma[k]! + length * direction[k]!
     const value = objective.evaluate(trial)

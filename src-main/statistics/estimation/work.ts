@@ -16,12 +16,25 @@ export interface PatternWork {
   share: number
   sample: Float64Array
   sampleMean: Float64Array | null
-  /** k x k each, at the gamma last evaluated */
+  /** k x k each, at the gamma last evaluated: W and Q = W D W, whole once `ready`. */
   w: Float64Array
-  wd: Float64Array
+  q: Float64Array
+  ready: boolean
+  /** Which way the last evaluation went (pattern-value.ts): dense, or by P and H or X (k x m each) and T^-1 (k). */
+  dense: boolean
+  half: Float64Array
+  image: Float64Array
+  precision: Float64Array
   /** k: ybar_k - mu_k, and W d */
   d: Float64Array
   z: Float64Array
+}
+
+/** What the patterns of a group with diagonal Theta share: R and K (m x m), Lambda R (p x m). */
+export interface StructureWork {
+  root: Float64Array
+  kernel: Float64Array
+  load: Float64Array
 }
 
 export interface GroupWork extends CellColumns {
@@ -50,5 +63,7 @@ export interface GroupWork extends CellColumns {
   /** True when every cell is one gamma with weight 1, and then that gamma. */
   plain: boolean
   gamma: Int32Array
-  scratch: { chol: Float64Array; data: Float64Array; first: Int32Array }
+  /** null where some residual covariance is free or fixed at another value than 0, or factors are many. */
+  structure: StructureWork | null
+  scratch: { chol: Float64Array; first: Int32Array; projection: Float64Array }
 }

@@ -5,7 +5,7 @@
  * no feature can live in one of them only. Inputs are validated by the operation's own schema on the other side.
  */
 
-import type { FitState, Relation, StudyResult, Verdict } from '../study/result.ts'
+import type { FitState, Relation, StabilityResult, StudyResult, Verdict } from '../study/result.ts'
 import type { Candidate, Caution, CellPart, Estimation, LadderPlan, Origin, Release, Rules } from '../study/study.ts'
 
 export type * from '../study/result.ts'
@@ -262,45 +262,6 @@ export interface RefusedComparison {
   from: string
   group: string
   reason: string
-}
-
-/** How often each step of a ladder holds, and each rung is the one to stand on, when the cases are drawn anew. */
-export interface StabilityResult {
-  ladder: string
-  /** Resamples asked for, and done: fewer when the work was stopped. */
-  asked: number
-  resamples: number
-  seed: number
-  /** Resamples in which some rung has no solution; they are counted in everything, never left out. */
-  incomplete: number
-  /** Resamples in which one can stand nowhere: the lowest rung has no solution. */
-  nowhere: number
-  steps: {
-    from: string
-    to: string
-    /** In the data themselves. */
-    verdict: Verdict
-    /** Resamples by verdict. */
-    counts: Record<Verdict, number>
-    /** In which the step held. */
-    share: number
-    /** The share that a step which is exactly true would have in resamples; null where no plain test decides alone. */
-    expectedWhenExact: number | null
-    /** The share of new samples of the same size in which it would hold, had the population the misfit estimated here; null likewise. */
-    expectedInNewSamples: number | null
-    sentence: string
-  }[]
-  rungs: {
-    rung: string
-    /** Resamples in which it is the one to stand on, and in which it has no solution. */
-    stands: number
-    unsolved: number
-    share: number
-    standsInData: boolean
-    sentence: string
-  }[]
-  /** What the shares mean, and what they do not. */
-  note: string
 }
 
 /** Two candidates with solutions on the same data; `lower` has no more degrees of freedom than `upper`. */

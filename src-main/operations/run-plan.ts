@@ -6,12 +6,14 @@ import { canonicalJson } from '../project/canonical-json.ts'
 import { createInMemoryProject, createProjectFile, openProjectFile, type Project } from '../project/project.ts'
 import type { Clock } from '../project/records.ts'
 import { InputError } from '../study/input-error.ts'
-import type { StudyResult } from '../study/result.ts'
+import { standingLadders } from '../study/ladders.ts'
+import type { StabilityResult, StudyResult } from '../study/result.ts'
 import type { Candidate, DataSet, LadderPlan, Plan } from '../study/study.ts'
 import type { Crew } from '../workers/jobs.ts'
 import type { ReadFile } from './bench.ts'
 import type { WorkEvent } from './contract.ts'
 import { checkFamily, familyOf } from './family.ts'
+import { ladderStability, type Resampling, requireCases } from './ladder-stability.ts'
 import { type ReadPlan, readPlanFile } from './open-study.ts'
 import { compareRecorded, noteStopped, recordJudgements } from './recorded-work.ts'
 
@@ -23,6 +25,8 @@ export interface PlanToRun {
   crew: Crew
   version: string
   clock: Clock
+  /** Resample every ladder too; null for no resampling. */
+  resampling?: Resampling | null
   onWork?: (event: WorkEvent) => void
   signal?: AbortSignal
 }
@@ -41,6 +45,7 @@ export interface PlanRun {
  */
 export async function runPlan(run: PlanToRun): Promise<PlanRun> {
   const read = await readPlanFile(run.planPath, run.readFile)
+  if (run.resampling != null) requireCases(read.data)
   const project = projectFor(read, run)
   try {
     const { plan, data } = read
@@ -49,7 +54,13 @@ export async function runPlan(run: PlanToRun): Promise<PlanRun> {
     const options = { ...(run.onWork && { onWork: run.onWork }), ...(run.signal && { signal: run.signal }) }
     const result = await compareRecorded(work, run.crew, options)
     recordJudgements(project, result, plan)
-    return { result, plan, data }
+    if (run.resampling == null) return { result, plan, data }
+    const stability: StabilityResult[] = []
+    for (const ladder of standingLadders(plan.ladders)) {
+      stability.push(await ladderStability({ project, plan, result, ...run }, ladder, run.resampling, options))
+      run.signal?.throwIfAborted()
+    }
+    return { result: { ...result, stability }, plan, data }
   } catch (error) {
     if (run.signal?.aborted === true) noteStopped(project)
     throw error

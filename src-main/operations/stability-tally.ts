@@ -7,10 +7,9 @@
 import { chiSquareUpper } from '../statistics/distributions/chi-square.ts'
 import { noncentralChiSquareLower } from '../statistics/distributions/noncentral-chi-square.ts'
 import type { ResampledFit } from '../statistics/resampling/ladder-resamples.ts'
-import type { CandidateResult, LadderResult, StepResult, Verdict } from '../study/result.ts'
+import type { CandidateResult, LadderResult, StabilityResult, StepResult, Verdict } from '../study/result.ts'
 import type { Rules } from '../study/study.ts'
 import type { LadderStep } from './climb.ts'
-import type { StabilityResult } from './contract.ts'
 import { ladderResult, type StepGround } from './ladder-result.ts'
 import { rungSentence, stabilityNote, stepSentence } from './stability-words.ts'
 

@@ -69,7 +69,7 @@ export function rungSentence(
 
 /** What the shares mean, and what they do not. */
 export const stabilityNote =
-  'Every resample draws as many cases as there are, with replacement, within each group, and refits every rung. It carries ' +
+  'Every resample draws as many cases as there are, with replacement (within each group where groups are compared), and refits every rung. It carries ' +
   'sampling error twice, that of the data and that of the draw, so that a step holds less often in resamples than in new ' +
   'samples from the same population. The shares say how far the verdicts hang on these very cases; they are no p-values.'
 

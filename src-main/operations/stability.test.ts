@@ -1,14 +1,17 @@
-import { mkdtempSync, writeFileSync } from 'node:fs'
+import { existsSync, mkdtempSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
+import { tickingClock } from '../project/test-study.ts'
+import { resultJson } from '../reporting/result-json.ts'
 import { seededGenerator } from '../statistics/distributions/generator.ts'
 import { inlineCrew } from '../workers/inline-crew.ts'
 import type { Crew } from '../workers/jobs.ts'
 import type { StabilityResult, WorkEvent } from './contract.ts'
 import type { Workbench } from './index.ts'
+import { runPlan } from './run-plan.ts'
 import { stepSentence } from './stability-words.ts'
-import { done, noiseFolder, refused, startBench } from './test-bench.ts'
+import { done, gatedCrew, noiseFolder, readFile, refused, startBench } from './test-bench.ts'
 
 /** The noise study with one factor on the ladder too, and any lines put in place of its rules. */
 function noiseBench(rules = 'rules: { alpha: 0.05 }', crew: Crew = inlineCrew): { workbench: Workbench; events: WorkEvent[] } {
@@ -107,6 +110,41 @@ describe('the stability of a ladder', () => {
     const fewer = await done(bench.workbench, 'stability', { ladder: 'Fewer', resamples: 10, seed: 1 })
     expect(fewer.steps[0]).toMatchObject({ verdict: 'does not hold', expectedWhenExact: null })
     expect(fewer.steps[0]!.counts['no test']).toBe(0)
+  })
+})
+
+describe('a plan run with resampling', () => {
+  const run = (folder: string, crew: Crew) => ({
+    planPath: join(folder, 'plan.yaml'),
+    projectPath: join(folder, 'study.rungwise'),
+    readFile,
+    crew,
+    version: '0.1.0',
+    clock: tickingClock(),
+    resampling: { resamples: 15, seed: 3 }
+  })
+
+  test('tells the stability of every ladder with its result', async () => {
+    const { result } = await runPlan(run(noiseFolder(), inlineCrew))
+    expect(result.stability!.map(({ ladder, resamples, seed }) => ({ ladder, resamples, seed }))).toEqual([
+      { ladder: 'Structure', resamples: 15, seed: 3 }
+    ])
+    expect(resultJson(result)).toContain('"stability": [')
+  })
+
+  test('is refused before anything is fitted or written where there are no cases', async () => {
+    const folder = noiseFolder()
+    writeFileSync(
+      join(folder, 'plan.yaml'),
+      `study: Published
+data: { indicators: [a, b, c], divisor: n, summary: [{ n: 100, covariance: [[1], [0.5, 1], [0.5, 0.5, 1]] }] }
+candidates: { One: { factors: { F: [a, b, c] } } }
+`
+    )
+    const { crew, fits } = gatedCrew()
+    await expect(runPlan(run(folder, crew))).rejects.toThrow('Published covariances cannot be resampled')
+    expect(fits()).toBe(0)
+    expect(existsSync(join(folder, 'study.rungwise'))).toBe(false)
   })
 })
 

@@ -10,13 +10,21 @@ describe('the words after rungwise', () => {
     [['compare', '--help'], { do: 'help' }],
     [['open'], { do: 'open', file: null }],
     [['open', 'a.rungwise'], { do: 'open', file: 'a.rungwise' }],
-    [['compare', 'p.yaml'], { do: 'compare', plan: 'p.yaml', project: null, json: null }],
-    [['compare', '--json', '-', 'p.yaml'], { do: 'compare', plan: 'p.yaml', project: null, json: '-' }],
+    [['compare', 'p.yaml'], { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: null }],
+    [['compare', '--json', '-', 'p.yaml'], { do: 'compare', plan: 'p.yaml', project: null, json: '-', resampling: null }],
     [
       ['compare', 'p.yaml', '--project=s.rungwise', '--json=r=1.json'],
-      { do: 'compare', plan: 'p.yaml', project: 's.rungwise', json: 'r=1.json' }
+      { do: 'compare', plan: 'p.yaml', project: 's.rungwise', json: 'r=1.json', resampling: null }
     ],
-    [['compare', '--', '--odd.yaml'], { do: 'compare', plan: '--odd.yaml', project: null, json: null }]
+    [
+      ['compare', 'p.yaml', '--resamples', '500', '--seed=7'],
+      { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: { resamples: 500, seed: 7 } }
+    ],
+    [
+      ['compare', 'p.yaml', '--resamples=500'],
+      { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: { resamples: 500, seed: 1 } }
+    ],
+    [['compare', '--', '--odd.yaml'], { do: 'compare', plan: '--odd.yaml', project: null, json: null, resampling: null }]
   ])('%j is understood', (words, command) => {
     expect(readArguments(words)).toEqual(command)
   })
@@ -34,7 +42,11 @@ describe('the words after rungwise', () => {
     [['compare', 'a.yaml', '--json', '--project', 's'], '--json needs a file name'],
     [['compare', 'a.yaml', '--project', '-'], 'cannot go to standard output'],
     [['compare', 'a.yaml', '--json', 'b', '--json', 'c'], 'given twice'],
-    [['compare', ''], 'empty file name']
+    [['compare', ''], 'empty file name'],
+    [['compare', 'a.yaml', '--resamples'], '--resamples needs a number'],
+    [['compare', 'a.yaml', '--resamples', '0'], '--resamples takes a whole number from 1 to 100000, not "0"'],
+    [['compare', 'a.yaml', '--resamples', 'many'], 'not "many"'],
+    [['compare', 'a.yaml', '--seed', '3'], '--seed goes with --resamples']
   ])('%j is refused with a way out', (words, message) => {
     expect(() => readArguments(words)).toThrow(InputError)
     expect(() => readArguments(words)).toThrow(message)

@@ -7,7 +7,13 @@ import { didYouMean } from '../study/nearest.ts'
 export type Command =
   | { do: 'help' }
   | { do: 'version' }
-  | { do: 'compare'; plan: string; project: string | null; json: string | null }
+  | {
+      do: 'compare'
+      plan: string
+      project: string | null
+      json: string | null
+      resampling: { resamples: number; seed: number } | null
+    }
   | { do: 'open'; file: string | null }
 
 export const helpText = `rungwise: compares nested measurement models and shows how far up the ladder
@@ -15,6 +21,7 @@ one can stand.
 
 Usage:
   rungwise compare PLAN.yaml [--project FILE] [--json FILE]
+                             [--resamples NUMBER] [--seed NUMBER]
   rungwise open [FILE]
   rungwise --help
   rungwise --version
@@ -24,6 +31,9 @@ compare   fits the plan's candidates and prints each ladder, top rung first.
                    file (made if it is not there)
   --json FILE      also write the result as JSON; "-" writes it to standard
                    output in place of the text
+  --resamples N    also refit each ladder to so many resamples of the cases, and
+                   tell how often each step holds
+  --seed N         which resamples are drawn (1 unless given)
 open      opens the window on a plan, a project file, or the sample study.
 
 Exit status: 0 done, 1 a fault of the program, 2 bad input (one message on
@@ -32,7 +42,7 @@ standard error, nothing written), 130 interrupted.
 
 const commands = ['compare', 'open', 'help', 'version'] as const
 const optionsOf = {
-  compare: ['--project', '--json', '--help', '--version'],
+  compare: ['--project', '--json', '--resamples', '--seed', '--help', '--version'],
   open: ['--help', '--version']
 } as const
 
@@ -59,13 +69,32 @@ export function readArguments(words: readonly string[]): Command {
 }
 
 function readCompare(words: readonly string[]): Command {
-  const { files, values, asked } = sortWords(words, optionsOf.compare, ['--project', '--json'])
+  const { files, values, asked } = sortWords(words, optionsOf.compare, ['--project', '--json', '--resamples', '--seed'])
   if (asked !== null) return { do: asked }
   const plan = onlyFile(files, 'compare')
   if (plan === null) throw new InputError('compare needs a plan file.', { remedy: 'Write: rungwise compare PLAN.yaml' })
   const project = values.get('--project') ?? null
   if (project === '-') throw new InputError('--project needs a file; a project cannot go to standard output.')
-  return { do: 'compare', plan, project, json: values.get('--json') ?? null }
+  return { do: 'compare', plan, project, json: values.get('--json') ?? null, resampling: readResampling(values) }
+}
+
+const mostResamples = 100_000
+
+function readResampling(values: ReadonlyMap<string, string>): { resamples: number; seed: number } | null {
+  const resamples = wholeNumber(values, '--resamples', 1, mostResamples)
+  const seed = wholeNumber(values, '--seed', 0, 2 ** 31 - 1)
+  if (resamples !== null) return { resamples, seed: seed ?? 1 }
+  if (seed !== null) throw new InputError('--seed goes with --resamples.', { remedy: 'Write: --resamples 1000 --seed 1' })
+  return null
+}
+
+function wholeNumber(values: ReadonlyMap<string, string>, option: string, least: number, most: number): number | null {
+  const text = values.get(option)
+  if (text === undefined) return null
+  const number = Number(text)
+  if (!/^\d+$/.test(text) || number < least || number > most)
+    throw new InputError(`${option} takes a whole number from ${least} to ${most}, not "${text}".`)
+  return number
 }
 
 function readOpen(words: readonly string[]): Command {
@@ -104,9 +133,11 @@ function sortWords(words: readonly string[], known: readonly string[], withValue
   return sorted
 }
 
+const numbered = ['--resamples', '--seed']
+
 function takeValue(values: Map<string, string>, option: string, value: string | undefined): void {
   if (value === undefined || value === '' || (value.startsWith('-') && value !== '-')) {
-    throw new InputError(`${option} needs a file name after it.`)
+    throw new InputError(`${option} needs a ${numbered.includes(option) ? 'number' : 'file name'} after it.`)
   }
   if (values.has(option)) throw new InputError(`${option} is given twice.`)
   values.set(option, value)

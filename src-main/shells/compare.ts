@@ -6,6 +6,7 @@ import type { WorkEvent } from '../operations/contract.ts'
 import { type PlanRun, runPlan } from '../operations/run-plan.ts'
 import { resultJson } from '../reporting/result-json.ts'
 import { studyText } from '../reporting/text-ladder.ts'
+import { stabilityText } from '../reporting/text-stability.ts'
 import { InputError } from '../study/input-error.ts'
 import type { Crew } from '../workers/jobs.ts'
 import { createPool } from '../workers/pool.ts'
@@ -18,6 +19,8 @@ export interface CompareWords {
   project: string | null
   /** A file, or "-" for standard output. */
   json: string | null
+  /** Resample every ladder; null for no resampling. */
+  resampling: { resamples: number; seed: number } | null
 }
 
 /** Who fits; a pool of worker threads unless a test brings its own crew. */
@@ -36,6 +39,7 @@ export async function compare(words: CompareWords, around: Surroundings, crewMak
     const run = await runPlan({
       planPath: paths.plan,
       projectPath: paths.project,
+      resampling: words.resampling,
       readFile: readUserFile,
       crew,
       version: files.version,
@@ -66,7 +70,7 @@ async function resolvePaths(words: CompareWords, folder: string): Promise<Compar
   if (written.includes(plan)) throw new InputError('The plan would be written over.', { where: plan, remedy: 'Name another file.' })
   if (project !== null && project === json) throw new InputError('--project and --json name the same file.', { where: project })
   for (const path of written) await assertWritablePlace(path!)
-  return { plan, project, json }
+  return { plan, project, json, resampling: words.resampling }
 }
 
 /** JSON alone on standard output, or the text there and the JSON in its file. */
@@ -78,4 +82,5 @@ async function print(run: PlanRun, json: string | null, around: Surroundings): P
   }
   if (text !== null) await writeWhole(json!, text)
   around.stdout.write(studyText({ result: run.result, estimation: run.plan.estimation, rules: run.plan.rules }))
+  around.stdout.write(stabilityText(run.result.stability ?? []))
 }

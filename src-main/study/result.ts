@@ -133,6 +133,45 @@ export interface NormalityGroup {
   indicators: { name: string; skewness: number; kurtosis: number }[]
 }
 
+/** How often each step of a ladder holds, and each rung is the one to stand on, when the cases are drawn anew. */
+export interface StabilityResult {
+  ladder: string
+  /** Resamples asked for, and done: fewer when the work was stopped. */
+  asked: number
+  resamples: number
+  seed: number
+  /** Resamples in which some rung has no solution; they are counted in everything, never left out. */
+  incomplete: number
+  /** Resamples in which one can stand nowhere: the lowest rung has no solution. */
+  nowhere: number
+  steps: {
+    from: string
+    to: string
+    /** In the data themselves. */
+    verdict: Verdict
+    /** Resamples by verdict. */
+    counts: Record<Verdict, number>
+    /** In which the step held. */
+    share: number
+    /** The share that a step which is exactly true would have in resamples; null where no plain test decides alone. */
+    expectedWhenExact: number | null
+    /** The share of new samples of the same size in which it would hold, had the population the misfit estimated here; null likewise. */
+    expectedInNewSamples: number | null
+    sentence: string
+  }[]
+  rungs: {
+    rung: string
+    /** Resamples in which it is the one to stand on, and in which it has no solution. */
+    stands: number
+    unsolved: number
+    share: number
+    standsInData: boolean
+    sentence: string
+  }[]
+  /** What the shares mean, and what they do not. */
+  note: string
+}
+
 export interface StudyResult {
   study: string
   program: { name: 'rungwise'; version: string }
@@ -147,4 +186,6 @@ export interface StudyResult {
   }
   candidates: CandidateResult[]
   ladders: LadderResult[]
+  /** Ladder by ladder, where the command line was asked to resample. */
+  stability?: StabilityResult[]
 }

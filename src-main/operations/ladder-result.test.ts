@@ -185,7 +185,7 @@ it('differences are the upper value less the lower', () => {
 
 describe('the test that is valid for the very pair', () => {
   const scaled = (T: number, scaling: number) => ({
-    scaled: { T: T / scaling, p: 0.5, scaling, form: 'Satorra & Bentler 1994', scalingAtUnrestricted: null }
+    scaled: { T: T / scaling, p: 0.5, scaling, form: 'Satorra & Bentler 1994' }
   })
 
   it('is the scaled difference where both statistics are scaled: c_d = (22 x 1.2 - 20 x 1.1) / 2 = 2.2 by hand', () => {

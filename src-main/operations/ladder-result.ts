@@ -77,17 +77,6 @@ function sideOf({ T, df, scaled }: CandidateResult): ScaledSide {
   return { T: T!, df, scaling: scaled?.scaling ?? Number.NaN }
 }
 
-/** Both sides with scaling factors of one form: where the forms differ, of the one that is defined for every model. */
-function scaledSides(lower: CandidateResult, upper: CandidateResult): [ScaledSide, ScaledSide] {
-  if (lower.scaled === null || upper.scaled === null || lower.scaled.form === upper.scaled.form)
-    return [sideOf(lower), sideOf(upper)]
-  const other = (side: CandidateResult): ScaledSide => ({
-    ...sideOf(side),
-    scaling: side.scaled!.scalingAtUnrestricted ?? Number.NaN
-  })
-  return [other(lower), other(upper)]
-}
-
 /** A scaled statistic on either side: the plain difference is then not the one to test. */
 function anyScaled({ lower, upper }: StepGround): boolean {
   return lower?.scaled != null || upper?.scaled != null
@@ -101,7 +90,7 @@ function bothScaled(lower: CandidateResult, upper: CandidateResult): boolean {
 /** Satorra & Bentler 2001 where it is defined and the rules leave it the choice, else the strictly positive form of 2010. */
 function scaledTest({ lower, upper, scalingAtUpper }: StepGround, rules: Rules) {
   if (!bothScaled(lower!, upper!)) return null
-  const [general, restricted] = scaledSides(lower!, upper!)
+  const [general, restricted] = [sideOf(lower!), sideOf(upper!)]
   const ordinary = rules.scaledDifference === 'ordinary' ? scaledDifference(restricted, general) : null
   if (ordinary !== null) return ordinary
   return scalingAtUpper == null && lower!.df > 0 ? null : strictlyPositiveDifference(restricted, general, scalingAtUpper ?? 0)
@@ -110,8 +99,7 @@ function scaledTest({ lower, upper, scalingAtUpper }: StepGround, rules: Rules) 
 /** Whether the test of this pair needs the lower rung's scaling at the upper rung's estimates. */
 export function needsScalingAtUpper(lower: CandidateResult, upper: CandidateResult, rules: Rules): boolean {
   if (!bothScaled(lower, upper) || lower.df === 0) return false
-  const [general, restricted] = scaledSides(lower, upper)
-  return rules.scaledDifference === 'strictly positive' || scaledDifference(restricted, general) === null
+  return rules.scaledDifference === 'strictly positive' || scaledDifference(sideOf(upper), sideOf(lower)) === null
 }
 
 interface Refusal {

@@ -1,6 +1,6 @@
 /**
  * The whole fit with a mean-scaled statistic: complete data of fixtures/reference/02 (Satorra & Bentler 1994) and missing
- * answers of 03 (Yuan & Bentler 2000, form b), as the plan's settings give them.
+ * answers of 03 (Yuan & Bentler 2000, form a), as the plan's settings give them.
  */
 import { expect, it } from 'vitest'
 import { fitModel } from '../../src-main/statistics/fit/fit.ts'
@@ -47,10 +47,10 @@ it('attitude ratings (Chatterjee & Price 1977): T = 29.43, c = 1.3205, with indi
   )
 })
 
-it('missing answers in three groups: the scaled T of form b, named as such', () => {
+it('missing answers in three groups: the scaled T of form a, named as such', () => {
   const example = readExample<MissingExample>('03b_simulated_missing_multigroup.json')
   const { T, p } =
-    example.expected['equal_loadings']!.yuan_bentler_scaled_T['b_U_Gamma_A_and_B_at_model_implied_moments_observed_information']!
+    example.expected['equal_loadings']!.yuan_bentler_scaled_T['a_YuanBentler2000_U_Gamma_saturated_observed_information']!
   const cells = exampleCells(example as unknown as Example, 'equal_loadings')
   const rows = rowsOf(example).map((g) => g.values)
   const { fit } = fitModel(

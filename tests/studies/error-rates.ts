@@ -15,9 +15,11 @@ import {
 import { chiSquareUpper } from '../../src-main/statistics/distributions/chi-square.ts'
 import { type Generator, seededGenerator } from '../../src-main/statistics/distributions/generator.ts'
 import { chiBarSquareUpper } from '../../src-main/statistics/distributions/mixtures.ts'
-import { missingScalingForms } from '../../src-main/statistics/estimation/scaling-missing.ts'
+import { normalObjective } from '../../src-main/statistics/estimation/normal-likelihood.ts'
+import { type InformationsAt, missingScalingFactor } from '../../src-main/statistics/estimation/scaling-missing.ts'
 import { fitModel } from '../../src-main/statistics/fit/fit.ts'
 import type { ModelCells } from '../../src-main/statistics/model/cells.ts'
+import { compileModel } from '../../src-main/statistics/model/compile.ts'
 import { splitByPattern } from '../../src-main/statistics/moments/missing-patterns.ts'
 import { completeCaseMoments } from '../../src-main/statistics/moments/sample-moments.ts'
 import { saturatedMoments } from '../../src-main/statistics/moments/saturated-em.ts'
@@ -159,18 +161,19 @@ function exactFitWithHoles(n: number, heavy: boolean, generator: Generator): Rec
   const { patterns, n: cases } = splitByPattern(values, 6)
   const { mean, covariance } = saturatedMoments(patterns, 6)
   const moments = { indicators, groups: [{ name: null, n: cases, patterns, mean, covariance }] }
-  const { fit } = fitModel(cells.two, moments, { convention: 'normal', statistic: 'mean-scaled', standardErrors: 'observed' }, [
-    values
-  ])
-  if (fit.T === null) return { 'not scaled': null, 'at the model-implied moments': null, 'at the unrestricted estimates': null }
-  const scaled = fit.scaled
-  return {
-    'not scaled': fit.p,
-    'at the model-implied moments': scaled?.form === missingScalingForms.atModel ? scaled.p : null,
-    'at the unrestricted estimates':
-      scaled?.scalingAtUnrestricted == null ? null : chiSquareUpper(fit.T / scaled.scalingAtUnrestricted, fit.df)
+  const { fit, gamma } = fitModel(cells.two, moments, { convention: 'normal', standardErrors: 'observed' })
+  if (fit.T === null || gamma === null) return Object.fromEntries(['not scaled', ...places].map((place) => [place, null]))
+  const model = compileModel(cells.two)
+  const objective = normalObjective(model, moments, 'normal')
+  objective.evaluate(Float64Array.from(gamma))
+  const scaledP = (place: InformationsAt) => {
+    const c = missingScalingFactor(model, objective, moments, [values], place)
+    return c === null || !(c > 0) ? null : chiSquareUpper(fit.T! / c, fit.df)
   }
+  return { 'not scaled': fit.p, ...Object.fromEntries(places.map((place) => [place, scaledP(place)])) }
 }
+
+const places: InformationsAt[] = ['the model-implied moments', 'the unrestricted estimates']
 
 console.log(`seed ${seed}, ${replications} replications a cell\n`)
 console.log('| population and data | N | test | rejected at .05 | standard errors from .05 | undefined |')

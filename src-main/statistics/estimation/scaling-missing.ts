@@ -4,25 +4,27 @@
  *     c = tr(U Gamma) / df = { tr(A^-1 B) - tr[(Delta'A Delta)^-1 Delta'B Delta] } / df
  *
  * A is the observed information and B the cross-product information of the unrestricted model's p + p(p+1)/2 moments per
- * group, both taken at the model-implied moments: of the forms in use, which differ in finite samples, this is form (b) of
- * fixtures/reference/03a, and it is named wherever c is printed. Delta'B Delta are the cross-products of the model's own
- * casewise scores. A is of the order of the moments, so unlike complete data this needs a matrix of that size a group.
+ * group, Delta the derivatives of the moments at the fitted model. Forms in use differ in where A and B are taken, and in
+ * finite samples: here at the unrestricted estimates, form (a) of fixtures/reference/03a. At the model-implied moments, form
+ * (b), A need not be positive definite when a model is far from the data, c moves with the misfit, and true models are
+ * rejected more often (the study of error rates in DEVELOPERS.md). Whichever it is, the form is named where c is printed.
  *
- * Far from the data A at the model's moments need not be positive definite; then form (a), at the unrestricted estimates, takes
- * its place and is named. A difference test takes the same form on both sides.
+ * A is of the order of the moments, so unlike complete data this needs a matrix of that size a group.
  */
 import { cholesky, choleskySolve, mirrorLower, multiply } from '../matrix/symmetric.ts'
 import type { ModelCells } from '../model/cells.ts'
 import { type CompiledModel, compileModel } from '../model/compile.ts'
 import type { GroupState } from '../model/implied-moments.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
-import { casewiseScores, scoreCrossProducts } from './casewise.ts'
+import { scoreCrossProducts } from './casewise.ts'
 import { cellColumns, sideBySide } from './cell-columns.ts'
 import { normalObjective, type Objective } from './normal-likelihood.ts'
 
-export const missingScalingForms = {
-  atModel: 'Yuan & Bentler 2000, both informations at the model-implied moments',
-  atUnrestricted: 'Yuan & Bentler 2000, both informations at the unrestricted estimates'
+/** Where the two informations are taken. */
+export type InformationsAt = 'the unrestricted estimates' | 'the model-implied moments'
+
+export function missingScalingForm(at: InformationsAt): string {
+  return `Yuan & Bentler 2000, both informations at ${at}`
 }
 
 /**
@@ -35,23 +37,8 @@ export function missingScalingFactor(
   model: CompiledModel,
   objective: Objective,
   moments: SampleMoments,
-  rows: readonly Float64Array[]
-): number | null {
-  if (model.df <= 0) return null
-  const whole = unrestrictedTrace(objective.states, moments, rows)
-  const own = modelTrace(model, objective, rows)
-  return whole === null || own === null ? null : (whole - own) / model.df
-}
-
-/**
- * c with both informations at the unrestricted estimates, form (a): defined for every model, where form (b) need not be when a
- * model is far from the data, for A is not positive definite there.
- */
-export function missingScalingAtUnrestricted(
-  model: CompiledModel,
-  objective: Objective,
-  moments: SampleMoments,
-  rows: readonly Float64Array[]
+  rows: readonly Float64Array[],
+  at: InformationsAt = 'the unrestricted estimates'
 ): number | null {
   if (model.df <= 0) return null
   const q = model.parameters
@@ -61,7 +48,8 @@ export function missingScalingAtUnrestricted(
   for (let g = 0; g < rows.length; g++) {
     const state = objective.states[g]!
     const { covariance, mean } = moments.groups[g]!
-    const whole = unrestrictedInformation(moments, g, { p: state.p, sigma: covariance, mu: mean! })
+    const place = at === 'the model-implied moments' ? state : { p: state.p, sigma: covariance, mu: mean! }
+    const whole = unrestrictedInformation(moments, g, place)
     const size = whole.model.parameters
     const meat = scoreCrossProducts(whole.model, whole.objective.states, [rows[g]!])
     const jacobian = momentJacobian(model, g, state, whole.model.gammaLabels)
@@ -164,32 +152,6 @@ function traceOfSolved(a: Float64Array, b: Float64Array, n: number): number | nu
     for (let i = 0; i < n; i++) column[i] = b[Math.max(i, j) * n + Math.min(i, j)]!
     choleskySolve(a, n, column)
     trace += column[j]!
-  }
-  return trace
-}
-
-/** tr[(Delta'A Delta)^-1 Delta'B Delta] */
-function modelTrace(model: CompiledModel, objective: Objective, rows: readonly Float64Array[]): number | null {
-  const q = model.parameters
-  const information = new Float64Array(q * q)
-  objective.derive(new Float64Array(q), information, 'tangent')
-  for (let k = 0; k < information.length; k++) information[k]! *= objective.total / 2
-  return traceOfSolved(information, scoreCrossProducts(model, objective.states, rows), q)
-}
-
-/** tr(A^-1 B) = sum over the cases of s' A^-1 s, group by group, so that B is never formed. */
-function unrestrictedTrace(states: readonly GroupState[], moments: SampleMoments, rows: readonly Float64Array[]): number | null {
-  let trace = 0
-  for (let g = 0; g < states.length; g++) {
-    const { model, objective, information } = unrestrictedInformation(moments, g, states[g]!)
-    const q = model.parameters
-    if (!cholesky(information, q, information)) return null
-    const solved = new Float64Array(q)
-    casewiseScores(model, objective.states, [rows[g]!], (score) => {
-      solved.set(score)
-      choleskySolve(information, q, solved)
-      for (let k = 0; k < q; k++) trace += score[k]! * solved[k]!
-    })
   }
   return trace
 }

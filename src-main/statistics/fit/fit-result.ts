@@ -59,8 +59,6 @@ export interface ScaledResult {
   /** c */
   scaling: number
   form: string
-  /** With missing answers: c by the form that is defined for every model, so that any two can be compared; else null. */
-  scalingAtUnrestricted: number | null
 }
 
 /** One start of the search for the smallest minimum. */

@@ -5,12 +5,7 @@ import { chiSquareUpper } from '../distributions/chi-square.ts'
 import type { Objective } from '../estimation/normal-likelihood.ts'
 import type { CaseGroup } from '../estimation/robust-scores.ts'
 import { baselineScaling, scalingFactor } from '../estimation/scaling.ts'
-import {
-  missingBaselineScaling,
-  missingScalingAtUnrestricted,
-  missingScalingFactor,
-  missingScalingForms
-} from '../estimation/scaling-missing.ts'
+import { missingBaselineScaling, missingScalingFactor, missingScalingForm } from '../estimation/scaling-missing.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { SampleMoments } from '../moments/sample-moments.ts'
 import type { FitResult, ScaledResult } from './fit-result.ts'
@@ -66,7 +61,7 @@ function caseGroups({ rows, model }: ScaledInput): CaseGroup[] {
   return rows.map((values) => ({ rows: values, size: values.length / model.indicators.length }))
 }
 
-type Scaling = Pick<ScaledResult, 'scaling' | 'form' | 'scalingAtUnrestricted'>
+type Scaling = Pick<ScaledResult, 'scaling' | 'form'>
 
 function completeScaling(input: ScaledInput): Scaling | null {
   const { model, objective } = input
@@ -74,14 +69,10 @@ function completeScaling(input: ScaledInput): Scaling | null {
   const curvature = new Float64Array(q * q)
   objective.derive(new Float64Array(q), curvature)
   const scaling = scalingFactor({ model, states: objective.states, groups: caseGroups(input), curvature })?.scaling ?? null
-  return scaling === null ? null : { scaling, form: 'Satorra & Bentler 1994', scalingAtUnrestricted: null }
+  return scaling === null ? null : { scaling, form: 'Satorra & Bentler 1994' }
 }
 
-/** The form of the plan's methods where it is defined, else the one that always is. */
 function missingScaling({ model, objective, moments, rows }: ScaledInput): Scaling | null {
-  const scalingAtUnrestricted = missingScalingAtUnrestricted(model, objective, moments, rows)
-  const atModel = missingScalingFactor(model, objective, moments, rows)
-  if (atModel !== null && atModel > 0) return { scaling: atModel, form: missingScalingForms.atModel, scalingAtUnrestricted }
-  if (scalingAtUnrestricted === null || !(scalingAtUnrestricted > 0)) return null
-  return { scaling: scalingAtUnrestricted, form: missingScalingForms.atUnrestricted, scalingAtUnrestricted }
+  const scaling = missingScalingFactor(model, objective, moments, rows)
+  return scaling === null || !(scaling > 0) ? null : { scaling, form: missingScalingForm('the unrestricted estimates') }
 }

@@ -6,7 +6,7 @@ import type { MixturePart } from '../statistics/distributions/mixtures.ts'
 import { chiBarSquareWeights } from '../statistics/distributions/mixtures.ts'
 import { cellCorrelations } from '../statistics/fit/cell-correlations.ts'
 import { type Boundary, type BoundaryParameter, boundaryOf } from '../study/boundary.ts'
-import { resolveCandidate } from '../study/candidate-model.ts'
+import { type ResolvedCandidate, resolveCandidate } from '../study/candidate-model.ts'
 import { ladderRungs } from '../study/ladders.ts'
 import type { CandidateResult, LadderResult } from '../study/result.ts'
 import { addsWords } from '../study/sentences.ts'
@@ -78,7 +78,7 @@ async function ladderStep(from: string, to: string, input: ClimbInput, crew: Cre
     sameMoments,
     relation,
     sizes: general.sample.moments.groups.map((g) => g.n),
-    addsLoadings: upperCandidate.equal.includes('loadings') && !lowerCandidate.equal.includes('loadings')
+    addsLoadings: addsEqualLoadings(lowerCandidate, upperCandidate)
   }
   if (relation?.relation === 'not nested' && lower?.state === 'fitted' && upper?.state === 'fitted') {
     ground.notNested = await casewiseTests(general, restricted, input.memory, crew, signal)
@@ -96,6 +96,14 @@ async function ladderStep(from: string, to: string, input: ClimbInput, crew: Cre
     },
     boundary
   }
+}
+
+/** Whether the step makes loadings equal across groups, or several of them over time. */
+function addsEqualLoadings(lower: ResolvedCandidate, upper: ResolvedCandidate): boolean {
+  const equalities = ({ changes }: ResolvedCandidate) =>
+    changes.filter((change) => change.do === 'equal' && change.cells.every((cell) => cell.part === 'loading')).length
+  if (upper.equal.includes('loadings') && !lower.equal.includes('loadings')) return true
+  return equalities(upper) > equalities(lower) + 1
 }
 
 /** Candidates of one key were fitted to the same moments: the same indicators, by the same groups or pooled. */

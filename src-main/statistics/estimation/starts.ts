@@ -8,6 +8,7 @@
 import type { Generator } from '../distributions/generator.ts'
 import type { CompiledGroup, CompiledModel, FreeCell, MatrixName } from '../model/compile.ts'
 import type { GroupMoments, SampleMoments } from '../moments/sample-moments.ts'
+import { backWithin, startWithin } from './constrained-start.ts'
 
 /** gamma (q) to start from. `constrained` are the labels bound by linear constraints (effects coding). */
 export function startingValues(model: CompiledModel, moments: SampleMoments): Float64Array {
@@ -16,7 +17,7 @@ export function startingValues(model: CompiledModel, moments: SampleMoments): Fl
   model.groups.forEach((group, g) => {
     startGroup(model, group, moments.groups[g]!, targets, bound)
   })
-  return Float64Array.from(model.gammaLabels, (label) => targets.of(label) ?? 0)
+  return startWithin(model, (label) => targets.of(label))
 }
 
 /** Labels that share a linear constraint with a pivot cell: those of its column and matrix. */
@@ -28,11 +29,11 @@ function siblings(group: CompiledGroup, pivot: FreeCell): string[] {
   ]
 }
 
-/** A seeded perturbation of a start: every gamma by some tens of percent, and now and then a sign. */
+/** A seeded perturbation of a start: every gamma by some tens of percent, and now and then a sign; constraints kept. */
 export function perturbedStart(model: CompiledModel, start: Float64Array, generator: Generator): Float64Array {
   const matrixOf = new Map<string, MatrixName>()
   for (const group of model.groups) for (const cell of group.free) matrixOf.set(cell.label, cell.matrix)
-  return start.map((value, k) => {
+  const moved = start.map((value, k) => {
     const matrix = matrixOf.get(model.gammaLabels[k]!)
     const z = generator.normal()
     if (matrix === 'theta') return value * Math.exp(0.5 * z)
@@ -40,6 +41,7 @@ export function perturbedStart(model: CompiledModel, start: Float64Array, genera
     if (matrix === 'lambda' || matrix === 'beta') return value * (1 + 0.6 * z)
     return value + 0.1 * z * (Math.abs(value) + 0.1)
   })
+  return backWithin(model, start, moved)
 }
 
 /** Averages of the values wanted for each label so far. */

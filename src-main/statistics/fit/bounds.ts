@@ -50,7 +50,7 @@ export function boundCautions(bounds: readonly BoundResult[], held: number, test
     `${cells.charAt(0).toUpperCase()}${cells.slice(1)} ${one ? 'lies on its bound' : 'lie on their bounds'}, beyond which the model would fit better still.`,
     `The degrees of freedom (${test.df}) count ${one ? 'it' : 'them'} as free all the same; ${one ? 'it has' : 'they have'} no standard error.`,
     referenceWords(test, held),
-    'A difference test with this candidate on one side is affected likewise.'
+    'A difference test with this candidate on one side can be affected likewise.'
   ].join(' ')
   return [{ code: 'bound-active', message, cell: one ? active[0]!.of : null }]
 }

@@ -9,7 +9,12 @@ export interface Fact {
   title?: string | undefined
 }
 
-export function stepFacts({ difference, notNested, proof, relation }: StepResult): Fact[] {
+/** What the verdict's own sentence says already is not said again. */
+export function stepFacts(step: StepResult): Fact[] {
+  return allFacts(step).filter(({ text }) => !step.because.includes(text))
+}
+
+function allFacts({ difference, notNested, proof, relation }: StepResult): Fact[] {
   return [
     ...(difference === null ? [] : differenceFacts(difference)),
     ...(notNested === null ? [] : notNestedFacts(notNested)),

@@ -1,8 +1,9 @@
-import { mkdtempSync, writeFileSync } from 'node:fs'
+import { mkdtempSync, readFileSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import { seededGenerator } from '../statistics/distributions/generator.ts'
+import { parsePlan } from '../study/plan-file.ts'
 import type { StudyView } from './contract.ts'
 import type { Workbench } from './index.ts'
 import { done, refused, startBench } from './test-bench.ts'
@@ -85,6 +86,26 @@ describe('a study of repeated measurements', () => {
       }
     })
     expect(added.result.ladders[1]!.standHere).toBe('Wellbeing, metric over time')
+  })
+
+  test('lets a candidate derive from a rung, with the shifted intercept let go', async () => {
+    const candidate = {
+      ...view.candidates[0]!.candidate,
+      name: 'But for joy',
+      from: 'Wellbeing, scalar over time',
+      factors: null,
+      change: [{ do: 'free' as const, cell: { part: 'intercept' as const, of: ['joy2'] }, group: null }]
+    }
+    await done(workbench, 'addCandidate', { candidate })
+    await done(workbench, 'addLadder', { ladder: { name: 'Partly', rungs: ['Wellbeing, metric over time', 'But for joy'] } })
+    const fitted = await done(workbench, 'fitCandidates', { names: null })
+    expect(fitted.result.ladders.find(({ name }) => name === 'Partly')).toMatchObject({
+      standHere: 'But for joy',
+      steps: [{ verdict: 'holds', relation: 'nested', difference: { df: 1 } }]
+    })
+    const path = join(repeatedFolder(), 'again.yaml')
+    await done(workbench, 'exportPlan', { path })
+    expect(parsePlan(readFileSync(path, 'utf8'), 'again.yaml').candidates[1]).toEqual(candidate)
   })
 
   test('is resampled like any other ladder', async () => {

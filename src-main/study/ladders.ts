@@ -4,7 +4,7 @@
  * factor variances, covariances or means, each by itself on the highest of these, as ladders of two rungs.
  */
 import { InputError } from './input-error.ts'
-import { repeatedCandidates } from './repeated.ts'
+import { repeatedCandidates, repeatedNames } from './repeated.ts'
 import {
   type Candidate,
   type EqualSet,
@@ -54,6 +54,18 @@ function rungName(base: string, level: InvarianceLevel): string {
 
 function structuralName(base: string, level: InvarianceLevel, set: StructuralSet): string {
   return `${rungName(base, level)}, equal ${set}`
+}
+
+/** Names of all that a ladder brings with it, whether or not it can be made; none for a listed ladder. */
+export function generatedNames(ladder: LadderPlan): string[] {
+  if ('rungs' in ladder) return []
+  if ('over' in ladder) return repeatedNames(ladder)
+  const { invarianceOf, through, and } = ladder
+  const levels = invarianceLevels.slice(0, invarianceLevels.indexOf(through) + 1)
+  return [
+    ...levels.map((level) => rungName(invarianceOf, level)),
+    ...(and ?? []).map((set) => structuralName(invarianceOf, through, set))
+  ]
 }
 
 /** Names of a ladder's own rungs, bottom first. */

@@ -5,7 +5,7 @@
  * a path in the plan ("candidates.0.from") into the place to name in a message.
  */
 import { InputError } from './input-error.ts'
-import { ladderCandidates, standingLadders } from './ladders.ts'
+import { generatedNames, ladderCandidates, standingLadders } from './ladders.ts'
 import { didYouMean } from './nearest.ts'
 import { checkCandidate } from './plan-candidate-checks.ts'
 import { acrossOf, checkGrouping, type Fail, hasMeans, lineageOf } from './plan-context.ts'
@@ -15,7 +15,7 @@ import type { Candidate, DataSet, Estimation, LadderPlan, Plan } from './study.t
 export type PlaceOf = (path: string) => string | null
 
 /**
- * @throws InputError for the first thing found wrong, data first, then candidates in order, ladders, rules
+ * @throws InputError for the first thing found wrong: data, candidates in order, ladders, candidates derived from rungs of these, rules
  */
 export function checkPlan(plan: Plan, placeOf: PlaceOf = () => null): void {
   const fail = (path: string, what: string, remedy: string | null = null): never => {
@@ -27,15 +27,19 @@ export function checkPlan(plan: Plan, placeOf: PlaceOf = () => null): void {
     if (byName.has(candidate.name)) fail(`candidates.${i}`, `The candidate "${candidate.name}" stands twice.`, 'Rename one.')
     byName.set(candidate.name, candidate)
   })
-  plan.candidates.forEach((candidate, i) => {
-    checkCandidate(plan, byName, candidate, (path, what, remedy) => fail(`candidates.${i}${path}`, what, remedy))
-  })
+  const checkThose = (fromRungs: boolean, names: ReadonlyMap<string, Candidate>) =>
+    plan.candidates.forEach((candidate, i) => {
+      if (derivesFromRung(candidate, plan) === fromRungs)
+        checkCandidate(plan, names, candidate, (path, what, remedy) => fail(`candidates.${i}${path}`, what, remedy))
+    })
+  checkThose(false, byName)
   plan.ladders.forEach((ladder, i) => {
     const before = standingLadders(plan.ladders.slice(0, i)).map((other) => other.name)
     const twice = standingLadders([ladder]).find((one) => before.includes(one.name))
     if (twice !== undefined) fail(`ladders.${i}`, `The ladder "${twice.name}" stands twice.`, 'Rename one.')
     checkLadder(plan, ladder, (path, what, remedy) => fail(`ladders.${i}${path}`, what, remedy))
   })
+  checkThose(true, familyByName(plan))
   checkRules(plan, fail)
 }
 
@@ -49,7 +53,7 @@ export function checkPlanAgainstData(
   data: Pick<DataSet, 'grouping'> & { groups: readonly { name: string | null }[] }
 ): void {
   const groups = data.groups.map((group) => group.name).filter((name) => name !== null)
-  const byName = new Map(plan.candidates.map((candidate) => [candidate.name, candidate]))
+  const byName = familyByName(plan)
   for (const candidate of plan.candidates) {
     if (acrossOf(lineageOf(candidate, byName)) !== null && groups.length < 2) {
       throw new InputError(oneGroup(data.grouping), { where: `candidate "${candidate.name}"`, remedy: 'Remove "across".' })
@@ -111,7 +115,7 @@ function checkLadder(plan: Plan, ladder: LadderPlan, fail: Fail): void {
       fail(path, `The ladder "${ladder.name}" names "${name}", which is not a candidate.`, didYouMean(name, names, 'candidates'))
   }
   if ('rungs' in ladder) {
-    const names = [...new Set([...written, ...generatedNames(plan)])]
+    const names = [...new Set([...written, ...allGenerated(plan)])]
     ladder.rungs.forEach((rung, r) => {
       unknown(rung, `.rungs.${r}`, names)
       if (ladder.rungs.indexOf(rung) < r)
@@ -120,6 +124,9 @@ function checkLadder(plan: Plan, ladder: LadderPlan, fail: Fail): void {
     return
   }
   unknown(ladder.invarianceOf, '.invariance of', written)
+  if (derivesFromRung(plan.candidates.find((one) => one.name === ladder.invarianceOf)!, plan)) {
+    fail('.invariance of', `"${ladder.invarianceOf}" derives from a rung of a ladder, and cannot carry a ladder itself.`)
+  }
   if ('over' in ladder) checkOccasions(plan, ladder, fail)
   else checkGrouping(plan, ladder.across, (what, remedy) => fail('.across', what, remedy))
   if (!hasMeans(plan) && (ladder.through === 'scalar' || ladder.through === 'strict')) {
@@ -147,12 +154,29 @@ function checkStructural({ name, through, and }: Extract<LadderPlan, { across: s
   })
 }
 
-/** What the invariance ladders of the plan bring with them: a listed ladder may stand on it, with a partial step in between, say. */
-function generatedNames(plan: Plan): string[] {
-  const written = new Set(plan.candidates.map((candidate) => candidate.name))
-  return plan.ladders
-    .filter((ladder) => 'invarianceOf' in ladder && written.has(ladder.invarianceOf))
-    .flatMap((ladder) => ladderCandidates(ladder, plan.candidates).map((candidate) => candidate.name))
+/** What the invariance ladders of the plan bring with them: a listed ladder may stand on it, and candidates derive from it. */
+function allGenerated(plan: Plan): string[] {
+  return plan.ladders.flatMap(generatedNames)
+}
+
+/** Whether a candidate derives, directly or not, from what a ladder brings with it. */
+function derivesFromRung(candidate: Candidate, plan: Plan): boolean {
+  const generated = allGenerated(plan)
+  const seen = new Set<string>()
+  for (let next: Candidate | undefined = candidate; next !== undefined && next.from !== null; ) {
+    const from: string = next.from
+    next = plan.candidates.find((one) => one.name === from)
+    if (next === undefined) return generated.includes(from)
+    if (seen.has(from)) return false
+    seen.add(from)
+  }
+  return false
+}
+
+/** Written and generated candidates by name; of a plan whose ladders were checked. */
+function familyByName(plan: Plan): Map<string, Candidate> {
+  const generated = plan.ladders.flatMap((ladder) => ladderCandidates(ladder, plan.candidates))
+  return new Map([...generated, ...plan.candidates].map((candidate) => [candidate.name, candidate]))
 }
 
 function checkRules({ rules }: Plan, fail: Fail): void {

@@ -40,7 +40,7 @@ export function repeatedCandidates(ladder: RepeatedLadder, family: readonly Cand
         base.indicators.map((_, i) => base.cells.residualCovariances[i]![i]!)
       )
   }
-  const levels = invarianceLevels.slice(0, invarianceLevels.indexOf(ladder.through) + 1)
+  const levels = levelsThrough(ladder.through)
   return levels.map((level, i) => {
     const own =
       i === 0
@@ -48,6 +48,15 @@ export function repeatedCandidates(ladder: RepeatedLadder, family: readonly Cand
         : { from: repeatedName(ladder.invarianceOf, levels[i - 1]!) }
     return candidateSchema.parse({ name: repeatedName(ladder.invarianceOf, level), ...own, change: held[level]() })
   })
+}
+
+/** Names of the rungs, bottom first, whether or not they can be made. */
+export function repeatedNames({ invarianceOf, through }: RepeatedLadder): string[] {
+  return levelsThrough(through).map((level) => repeatedName(invarianceOf, level))
+}
+
+function levelsThrough(through: InvarianceLevel): InvarianceLevel[] {
+  return invarianceLevels.slice(0, invarianceLevels.indexOf(through) + 1)
 }
 
 function repeatedName(base: string, level: InvarianceLevel): string {

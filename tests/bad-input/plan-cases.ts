@@ -429,6 +429,21 @@ const overTime: BadInput[] = [
     '"b" is listed at "May", but "Half" does not measure by it.'
   ),
   added(
+    'a candidate from a rung that its ladder does not reach',
+    `${HALF}  Partly: { from: "Half, scalar over time" }\nladders:\n  Up: { invariance of: Half, over: { May: [a, b], June: [c, d] }, through: metric }\n`,
+    '"Partly" is derived from "Half, scalar over time", which is not a candidate.'
+  ),
+  added(
+    'a cell that a rung over time does not have',
+    `${HALF}  Partly:\n    from: Half, metric over time\n    change: [{ free: { loading: [d, F] } }]\nladders:\n  Up: { invariance of: Half, over: { May: [a, b], June: [c, d] }, through: metric }\n`,
+    'line 15, column 14: There is no factor "F". The factors are "F at May" and "F at June".'
+  ),
+  added(
+    'a ladder of a candidate that derives from a rung',
+    `${HALF}  Partly: { from: "Half, metric over time" }\nladders:\n  Up: { invariance of: Half, over: { May: [a, b], June: [c, d] }, through: metric }\n  On: { invariance of: Partly, over: { May: [a, b], June: [c, d] }, through: metric }\n`,
+    '"Partly" derives from a rung of a ladder, and cannot carry a ladder itself.'
+  ),
+  added(
     'two ladders of one candidate over different occasions',
     `${HALF}ladders:\n  Up: { invariance of: Half, over: { May: [a, b], June: [c, d] }, through: metric }\n  On: { invariance of: Half, over: { May: [a, b], July: [c, d] }, through: metric }\n`,
     'The ladder "On" takes "Half" over other occasions.'

@@ -36,7 +36,7 @@ export function casewiseScores(
   })
 }
 
-/** sum over all rows of score score' (q x q, lower triangle): the cross-product information B. */
+/** sum over all rows of score score' (q x q, lower triangle): the cross-product information B. Four rows are added at once. */
 export function scoreCrossProducts(
   model: CompiledModel,
   states: readonly GroupState[],
@@ -44,14 +44,30 @@ export function scoreCrossProducts(
 ): Float64Array {
   const q = model.parameters
   const sum = new Float64Array(q * q)
+  const four = [new Float64Array(q), new Float64Array(q), new Float64Array(q), new Float64Array(q)] as const
+  let kept = 0
   casewiseScores(model, states, rows, (score) => {
-    for (let i = 0; i < q; i++) {
-      const si = score[i]!
-      if (si === 0) continue
-      for (let j = 0; j <= i; j++) sum[i * q + j]! += si * score[j]!
-    }
+    four[kept]!.set(score)
+    kept = (kept + 1) % 4
+    if (kept === 0) addOuterProducts(four, q, sum)
   })
+  for (let k = kept; k < 4; k++) four[k]!.fill(0)
+  if (kept > 0) addOuterProducts(four, q, sum)
   return sum
+}
+
+type Four = readonly [Float64Array, Float64Array, Float64Array, Float64Array]
+
+function addOuterProducts([a, b, c, d]: Four, q: number, sum: Float64Array): void {
+  for (let i = 0; i < q; i++) {
+    const ai = a[i]!
+    const bi = b[i]!
+    const ci = c[i]!
+    const di = d[i]!
+    if (ai === 0 && bi === 0 && ci === 0 && di === 0) continue
+    const row = i * q
+    for (let j = 0; j <= i; j++) sum[row + j]! += ai * a[j]! + bi * b[j]! + ci * c[j]! + di * d[j]!
+  }
 }
 
 /** Row offsets by answered indicators, so that rows of one pattern share one factorisation. */

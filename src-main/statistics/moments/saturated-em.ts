@@ -3,7 +3,7 @@
  * extrapolation of Varadhan & Roland (2008): a step of two EM maps is stretched along its own curvature and kept only
  * where it stays positive definite and raises the likelihood.
  */
-import { cholesky, choleskyInverse, logDeterminant, multiply } from '../matrix/symmetric.ts'
+import { cholesky, choleskyInverse, choleskySolve, dotRows, logDeterminant, multiply } from '../matrix/symmetric.ts'
 import type { Pattern } from './sample-moments.ts'
 
 export interface SaturatedMoments {
@@ -75,67 +75,67 @@ function emMap(patterns: readonly Pattern[], p: number, theta: Theta): Theta {
 }
 
 /**
- * Adds share times the completed mean and the completed second moments about the old mean. With R = Sigma_mo Sigma_oo^-1,
- * completed deviations are T d_o with T = (I over R), and missing ones add Sigma_mm - R Sigma_om.
+ * Adds share times the completed mean and the completed second moments about the old mean. Observed ones count as they are;
+ * with R = Sigma_mo Sigma_oo^-1, missing deviations are R d_o, and missing ones add Sigma_mm - R Sigma_om.
  */
 function addExpected(pattern: Pattern, p: number, theta: Theta, share: number, next: Theta): void {
   const { observed, mean, covariance } = pattern
   const k = observed.length
-  const transfer = completion(theta, p, observed)
   const d = Float64Array.from(observed, (i, a) => mean![a]! - theta[i]!)
   const second = Float64Array.from(covariance)
-  for (let a = 0; a < k; a++) for (let b = 0; b < k; b++) second[a * k + b]! += d[a]! * d[b]!
-  const half = new Float64Array(p * k)
-  multiply(transfer, second, p, k, k, half)
+  for (let a = 0; a < k; a++) {
+    const row = p + observed[a]! * p
+    next[observed[a]!]! += share * mean![a]!
+    for (let b = 0; b < k; b++) {
+      second[a * k + b]! += d[a]! * d[b]!
+      next[row + observed[b]!]! += share * second[a * k + b]!
+    }
+  }
+  if (k === p) return
+  const missing = missingOf(observed, p)
+  const r = regression(theta, p, observed, missing)
+  const half = new Float64Array(missing.length * k)
+  multiply(r, second, missing.length, k, k, half)
+  missing.forEach((i, at) => {
+    next[i]! += share * (theta[i]! + dotRows(r, at * k, d, 0, k))
+    for (let a = 0; a < k; a++) {
+      next[p + i * p + observed[a]!]! += share * half[at * k + a]!
+      next[p + observed[a]! * p + i]! += share * half[at * k + a]!
+    }
+    missing.forEach((j, to) => {
+      let value = theta[p + i * p + j]! + dotRows(half, at * k, r, to * k, k)
+      for (let a = 0; a < k; a++) value -= r[at * k + a]! * theta[p + observed[a]! * p + j]!
+      next[p + i * p + j]! += share * value
+    })
+  })
+}
+
+function missingOf(observed: Int32Array, p: number): Int32Array {
   const seen = new Uint8Array(p)
   for (const i of observed) seen[i] = 1
-  for (let i = 0; i < p; i++) {
-    let deviation = 0
-    for (let a = 0; a < k; a++) deviation += transfer[i * k + a]! * d[a]!
-    next[i]! += share * (theta[i]! + deviation)
-    for (let j = 0; j < p; j++) {
-      let value = 0
-      for (let a = 0; a < k; a++) value += half[i * k + a]! * transfer[j * k + a]!
-      if (seen[i] === 0 && seen[j] === 0) {
-        value += theta[p + i * p + j]!
-        for (let a = 0; a < k; a++) value -= transfer[i * k + a]! * theta[p + observed[a]! * p + j]!
-      }
-      next[p + i * p + j]! += share * value
-    }
-  }
+  return Int32Array.from(seen.keys()).filter((i) => seen[i] === 0)
 }
 
-/** T, p x k: the identity on observed rows, Sigma_mo Sigma_oo^-1 on missing ones. */
-function completion(theta: Theta, p: number, observed: Int32Array): Float64Array {
+/** R = Sigma_mo Sigma_oo^-1, a row for each missing indicator. */
+function regression(theta: Theta, p: number, observed: Int32Array, missing: Int32Array): Float64Array {
   const k = observed.length
-  const transfer = new Float64Array(p * k)
-  observed.forEach((i, a) => {
-    transfer[i * k + a] = 1
+  const factor = observedFactor(theta, p, observed)
+  if (factor === null) throw new Error('an EM step left the positive definite matrices')
+  const r = new Float64Array(missing.length * k)
+  missing.forEach((i, at) => {
+    const row = r.subarray(at * k, (at + 1) * k)
+    for (let a = 0; a < k; a++) row[a] = theta[p + i * p + observed[a]!]!
+    choleskySolve(factor, k, row)
   })
-  if (k === p) return transfer
-  const inverse = observedInverse(theta, p, observed)
-  if (inverse === null) throw new Error('an EM step left the positive definite matrices')
-  const seen = new Set(observed)
-  for (let i = 0; i < p; i++) {
-    if (seen.has(i)) continue
-    for (let a = 0; a < k; a++) {
-      let sum = 0
-      for (let b = 0; b < k; b++) sum += theta[p + i * p + observed[b]!]! * inverse.matrix[b * k + a]!
-      transfer[i * k + a] = sum
-    }
-  }
-  return transfer
+  return r
 }
 
-function observedInverse(theta: Theta, p: number, observed: Int32Array): { matrix: Float64Array; logDeterminant: number } | null {
+/** Lower Cholesky factor of Sigma_oo; null where that is not positive definite. */
+function observedFactor(theta: Theta, p: number, observed: Int32Array): Float64Array | null {
   const k = observed.length
   const factor = new Float64Array(k * k)
   for (let a = 0; a < k; a++) for (let b = 0; b <= a; b++) factor[a * k + b] = theta[p + observed[a]! * p + observed[b]!]!
-  if (!cholesky(factor, k, factor)) return null
-  const logDet = logDeterminant(factor, k)
-  const matrix = new Float64Array(k * k)
-  choleskyInverse(factor, k, matrix, new Int32Array(k))
-  return { matrix, logDeterminant: logDet }
+  return cholesky(factor, k, factor) ? factor : null
 }
 
 /** theta - 2 a r + a^2 v with a = -|r|/|v|, where that is allowed; else the plain second map. */
@@ -159,15 +159,15 @@ function discrepancy(patterns: readonly Pattern[], p: number, theta: Theta): num
   let sum = 0
   for (const { observed, n, mean, covariance } of patterns) {
     const k = observed.length
-    const inverse = observedInverse(theta, p, observed)
-    if (inverse === null) return Number.POSITIVE_INFINITY
-    let trace = 0
-    for (let a = 0; a < k; a++) {
-      const da = mean![a]! - theta[observed[a]!]!
-      for (let b = 0; b < k; b++)
-        trace += (covariance[a * k + b]! + da * (mean![b]! - theta[observed[b]!]!)) * inverse.matrix[a * k + b]!
-    }
-    sum += n * (inverse.logDeterminant + trace)
+    const factor = observedFactor(theta, p, observed)
+    if (factor === null) return Number.POSITIVE_INFINITY
+    const logDet = logDeterminant(factor, k)
+    const inverse = new Float64Array(k * k)
+    choleskyInverse(factor, k, inverse, new Int32Array(k))
+    const d = Float64Array.from(observed, (i, a) => mean![a]! - theta[i]!)
+    let trace = dotRows(inverse, 0, covariance, 0, k * k)
+    for (let a = 0; a < k; a++) trace += d[a]! * dotRows(inverse, a * k, d, 0, k)
+    sum += n * (logDet + trace)
   }
   return sum
 }

@@ -38,7 +38,7 @@ function negativeVariances(model: CompiledModel, state: GroupState, group: strin
     if (value < 0) {
       found.push({
         code: 'negative-residual-variance',
-        message: `${sentence(cellWords('residual variance', [indicator], group))} is negative (${value.toPrecision(3)}), which no variance can be: the solution is improper.`,
+        message: `${sentence(cellWords('residual variance', [indicator], group))} is negative (${value.toPrecision(3)}), which no variance can be: the solution is improper. A candidate derived with a bound on it (at least 0) keeps it proper.`,
         cell: [indicator]
       })
     }
@@ -48,7 +48,7 @@ function negativeVariances(model: CompiledModel, state: GroupState, group: strin
     if (value < 0) {
       found.push({
         code: 'negative-factor-variance',
-        message: `${sentence(cellWords('factor variance', [factor], group))} is negative (${value.toPrecision(3)}), which no variance can be: the solution is improper.`,
+        message: `${sentence(cellWords('factor variance', [factor], group))} is negative (${value.toPrecision(3)}), which no variance can be: the solution is improper. A candidate derived with a bound on it (at least 0) keeps it proper.`,
         cell: [factor]
       })
     }

@@ -23,7 +23,7 @@ export function partialCandidate(base: Candidate, releases: readonly Release[], 
   }
 }
 
-/** What a ladder generated is nobody's parent in a plan file, so its own words are repeated. */
+/** What a ladder generated is replaced rather than derived from: its own words are repeated with the releases added. */
 function withReleases(base: Candidate, releases: readonly Release[], generated: boolean): Candidate {
   if (generated) return { ...base, except: [...base.except, ...releases] }
   return {

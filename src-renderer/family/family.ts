@@ -1,6 +1,6 @@
 /** A family's relations laid out for reading. Pure. */
-import type { CandidateResult, FamilyRelation, FamilyRelations, LadderPlan, StudyView } from '../../src-main/operations/contract.ts'
-import { resultOf } from '../state/look-up.ts'
+import type { CandidateResult, FamilyRelation, FamilyRelations, StudyView } from '../../src-main/operations/contract.ts'
+import { newLadderName, resultOf } from '../state/look-up.ts'
 
 /** The sentences apart: what is said first, and what stands beside the ladders. Those of the ladders are drawn instead. */
 export function partsOf({ sentences, chains, equivalent, off, without }: FamilyRelations): { lead: string[]; beside: string[] } {
@@ -17,13 +17,9 @@ export function standingAs(view: StudyView, chain: readonly string[]): string | 
   return listed?.name ?? climbed?.name ?? null
 }
 
-/** "Three factors to One factor", counted on where a ladder has that name. */
-export function nameFor(ladders: readonly LadderPlan[], chain: readonly string[]): string {
-  const name = `${chain[0]} to ${chain.at(-1)}`
-  const taken = (one: string) => ladders.some((ladder) => ladder.name === one)
-  let count = 1
-  while (taken(count === 1 ? name : `${name} (${count})`)) count += 1
-  return count === 1 ? name : `${name} (${count})`
+/** "Three factors to One factor" */
+export function nameFor(view: StudyView, chain: readonly string[]): string {
+  return newLadderName(view, `${chain[0]} to ${chain.at(-1)}`)
 }
 
 export interface UnnestedPair {

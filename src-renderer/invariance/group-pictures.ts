@@ -104,9 +104,9 @@ function widened(from: number, to: number): { from: number; to: number } {
   return to > from ? { from, to } : { from: from - 0.5, to: to + 0.5 }
 }
 
-/** Round values, three to six of them. */
+/** Round values, four to eight of them. */
 function ticksOf(from: number, to: number): number[] {
-  const rough = (to - from) / 4
+  const rough = (to - from) / 6
   const power = 10 ** Math.floor(Math.log10(rough))
   const step = power * ([1, 2, 5, 10].find((one) => one * power >= rough) ?? 10)
   const first = Math.ceil(from / step)
@@ -121,7 +121,7 @@ function tickText(value: number, signed: boolean): string {
 }
 
 /** Marks of groups by shape, so that they are told apart in black too: drawn around 0, 0. */
-export const shapes: readonly { path: string; filled: boolean }[] = [
+const shapes: readonly { path: string; filled: boolean }[] = [
   { path: 'M-3.2 0a3.2 3.2 0 1 0 6.4 0a3.2 3.2 0 1 0 -6.4 0', filled: true },
   { path: 'M-2.9 -2.9H2.9V2.9H-2.9Z', filled: false },
   { path: 'M0 -3.9L3.7 2.6H-3.7Z', filled: true },

@@ -1,6 +1,6 @@
 /** What a step holds equal that the rung below does not, and what may be let go of it by hand. Pure. */
 import type { CellPart, EqualSet, Release, ScoreTestView, StepResult, StudyView } from '../../src-main/operations/contract.ts'
-import { candidateOf, resultOf } from '../state/look-up.ts'
+import { candidateOf, newLadderName, resultOf } from '../state/look-up.ts'
 
 const partsOf: Readonly<Record<EqualSet, readonly CellPart[]>> = {
   loadings: ['loading', 'factor regression'],
@@ -34,4 +34,13 @@ export function choices(tests: readonly ScoreTestView[], parts: readonly CellPar
 
 export function releaseOf({ part, of, group }: ScoreTestView): Release {
   return { cell: { part, of }, group }
+}
+
+/** "Across clinics, scalar but for bags in Old Mill": without what both rungs of the step are called; counted on where it is taken. */
+export function ladderNameFor(view: StudyView, ladder: string, { from, to }: StepResult, made: string): string {
+  const words = to.split(', ')
+  const shared = words.findIndex((word, index) => word !== from.split(', ')[index])
+  const prefix = words.slice(0, Math.max(0, shared)).join(', ')
+  const own = prefix !== '' && made.startsWith(`${prefix}, `) ? made.slice(prefix.length + 2) : made
+  return newLadderName(view, `${ladder}, ${own}`)
 }

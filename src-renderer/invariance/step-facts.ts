@@ -1,5 +1,5 @@
 /** What a step's verdict rests on, line by line. Pure; formatting only. */
-import type { DifferenceResult, EvidenceRatio, NotNestedResult, StepResult } from '../../src-main/operations/contract.ts'
+import type { DifferenceResult, NotNestedResult, StepResult } from '../../src-main/operations/contract.ts'
 import { bounded, fixed, precise, probabilityPhrase } from '../state/format.ts'
 
 export interface Fact {
@@ -51,7 +51,9 @@ function testInWords(method: DifferenceResult['method']): string {
   }
 }
 
-function notNestedFacts({ distinguishable, z, p, evidenceAic, evidenceBic }: NotNestedResult): Fact[] {
+/** What the sentence leaves out: the statistic of the first test, and how sure the difference in BIC is. */
+function notNestedFacts({ distinguishable, bicInterval }: NotNestedResult): Fact[] {
+  const { lower, upper } = bicInterval
   return [
     ...(distinguishable === null
       ? []
@@ -62,22 +64,10 @@ function notNestedFacts({ distinguishable, z, p, evidenceAic, evidenceBic }: Not
             title: precise(distinguishable.p)
           }
         ]),
-    ...(z === null ? [] : [{ name: 'Which fits better', text: `z = ${fixed(z, 2)}, ${probabilityPhrase(p)}`, title: precise(p) }]),
-    ...evidence('Evidence by AIC', evidenceAic),
-    ...evidence('Evidence by BIC', evidenceBic)
+    { name: 'ΔBIC', text: `95% interval ${fixed(lower, 1)} to ${fixed(upper, 1)}`, title: `${precise(lower)} to ${precise(upper)}` }
   ]
 }
 
-function evidence(name: string, found: EvidenceRatio | null): Fact[] {
-  return found === null ? [] : [{ name, text: evidenceInWords(found), title: precise(found.ratio) }]
-}
-
-/** "12.4 times for Three factors"; beyond a million only that it is more. */
-export function evidenceInWords({ favours, ratio }: EvidenceRatio): string {
-  if (ratio === null || ratio > 1e6) return `over a million times for ${favours}`
-  return `${fixed(ratio, ratio < 100 ? 1 : 0)} times for ${favours}`
-}
-
-export function relationInWords(relation: NonNullable<StepResult['relation']>, proof: NonNullable<StepResult['proof']>): string {
+function relationInWords(relation: NonNullable<StepResult['relation']>, proof: NonNullable<StepResult['proof']>): string {
   return `${relation}, shown by ${proof === 'constraints' ? 'what each constrains' : 'fitting one to what the other implies'}`
 }

@@ -18,6 +18,15 @@ export function ladderOf(view: StudyView, name: string | null): LadderResult | n
   return { name: plan.name, rungs: 'rungs' in plan ? plan.rungs : [], standHere: null, steps: [] }
 }
 
+/** The name, counted on where a ladder has it. */
+export function newLadderName(view: StudyView, wanted: string): string {
+  const taken = new Set(view.ladders.map(({ name }) => name))
+  for (let count = 1; ; count += 1) {
+    const name = count === 1 ? wanted : `${wanted} (${count})`
+    if (!taken.has(name)) return name
+  }
+}
+
 /** The latest decision on a ladder. */
 export function decisionOn(view: StudyView, ladder: string): DecisionView | null {
   return view.decisions.filter((decision) => decision.ladder === ladder).at(-1) ?? null

@@ -19,7 +19,8 @@ import type { GroupWork, PatternWork } from './work.ts'
 export function addExpectedCurvature(work: GroupWork, curvature: Float64Array, q: number): void {
   const { form: gram, size, c, s, meanWeight } = work
   const count = c.length
-  const pairs = new Float64Array(count * count)
+  work.pairs ??= new Float64Array(count * count)
+  const pairs = work.pairs.fill(0)
   const moving = indicesWhere(count, (i) => c[i]! !== 0)
   const shifting = indicesWhere(count, (i) => s[i]! >= 0 && meanWeight[i]! !== 0)
   for (const pattern of work.patterns) {

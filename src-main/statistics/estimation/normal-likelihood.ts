@@ -120,6 +120,7 @@ function groupWork(
     meanWeight: array(group.free.length),
     plain: group.free.every((cell) => cell.gammas.length === 1 && cell.weights[0] === 1),
     gamma: Int32Array.from(group.free, (cell) => cell.gammas[0] ?? -1),
+    pairs: null,
     structure: twin === 'dense' ? null : structureWork(group, p, m),
     scratch: { chol: array(p * p), first: new Int32Array(p), projection: array(m) }
   }

@@ -63,6 +63,8 @@ export interface GroupWork extends CellColumns {
   /** True when every cell is one gamma with weight 1, and then that gamma. */
   plain: boolean
   gamma: Int32Array
+  /** Second derivatives by pairs of free cells, made when first wanted. */
+  pairs: Float64Array | null
   /** null where some residual covariance is free or fixed at another value than 0, or factors are many. */
   structure: StructureWork | null
   scratch: { chol: Float64Array; first: Int32Array; projection: Float64Array }

@@ -17,6 +17,7 @@ import type { SampleMoments } from '../moments/sample-moments.ts'
 import type { FitOutcome, FitState } from './fit-result.ts'
 import { labelWords } from './label-words.ts'
 import { failedFit, fittedResult } from './outcome.ts'
+import { runawaySentence } from './runaway.ts'
 import { smallestMinimum, startSeed } from './search.ts'
 import type { FitSettings } from './settings.ts'
 
@@ -51,7 +52,7 @@ export function fitModel(
     const generic = unidentifiedLabels(model, moments, seededGenerator(startSeed))
     const labels = generic.length > 0 ? generic : unknown
     if (labels.length > 0) return fail('not identified', notIdentifiedReason(model, labels, generic.length > 0), convergence)
-    return fail('not converged', stopReasons[best.stop], convergence)
+    return fail('not converged', stopReasons[best.stop] + runawaySentence(model, objective, best.gamma), convergence)
   }
 
   objective.evaluate(best.gamma)

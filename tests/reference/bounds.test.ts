@@ -3,10 +3,12 @@
  * residual variance of PREP is negative. A bounded fit must be the fit with that cell fixed at its bound, and say so.
  */
 import { describe, expect, it } from 'vitest'
+import { seededGenerator } from '../../src-main/statistics/distributions/generator.ts'
 import { scoreTests } from '../../src-main/statistics/estimation/score-tests.ts'
 import { fitModel } from '../../src-main/statistics/fit/fit.ts'
 import type { FitResult } from '../../src-main/statistics/fit/fit-result.ts'
 import type { CellBound, ModelCells } from '../../src-main/statistics/model/cells.ts'
+import { completeCaseMoments, type SampleMoments } from '../../src-main/statistics/moments/sample-moments.ts'
 import { candidateCells, resolveCandidate } from '../../src-main/study/candidate-model.ts'
 import { candidateSchema, scalings } from '../../src-main/study/study.ts'
 import { exampleCells, exampleMoments, readExample } from './examples.ts'
@@ -160,5 +162,73 @@ describe('other bounds', () => {
     expect(() =>
       fitModel({ ...cells, bounds: [{ label: 'none', least: 0, most: null }] }, moments, { convention: 'normal' })
     ).toThrow('none is no parameter')
+  })
+})
+
+describe('residual variances bounded at 0, in small samples with one large loading a factor', () => {
+  const indices = [0, 1, 2, 3, 4, 5]
+  const generator = seededGenerator(9)
+  const settings = { convention: 'normal' } as const
+
+  function draw(n: number): SampleMoments {
+    const values = new Float64Array(n * 6)
+    for (let row = 0; row < n; row++) {
+      const first = generator.normal()
+      const factors = [first, 0.5 * first + 0.85 * generator.normal()]
+      for (const i of indices) {
+        const loading = i % 3 === 0 ? 0.95 : 0.45
+        values[row * 6 + i] = loading * factors[Math.floor(i / 3)]! + Math.sqrt(1 - loading ** 2) * generator.normal()
+      }
+    }
+    return { indicators: indices.map((i) => `y${i}`), groups: [{ name: null, ...completeCaseMoments(values, 6) }] }
+  }
+
+  /** Two factors of unit variance; the residual variances named are fixed at 0. */
+  function twoFactors(zero: number[]): ModelCells {
+    return {
+      indicators: indices.map((i) => `y${i}`),
+      factors: ['F', 'G'],
+      groups: [
+        {
+          name: null,
+          loadings: indices.map((i) => (i < 3 ? [`l${i}`, 0] : [0, `l${i}`])),
+          regressions: [
+            [0, 0],
+            [0, 0]
+          ],
+          factorCovariances: [
+            [1, 'phi'],
+            ['phi', 1]
+          ],
+          residualCovariances: indices.map((i) => indices.map((j) => (i !== j || zero.includes(i) ? 0 : `t${i}`))),
+          intercepts: indices.map((i) => `n${i}`),
+          factorMeans: [0, 0]
+        }
+      ],
+      constraints: []
+    }
+  }
+
+  /** The best proper fit with at most one residual variance of each factor fixed at 0: more would leave no Sigma. */
+  function bestOfAll(moments: SampleMoments): number {
+    const sets = [-1, 0, 1, 2].flatMap((i) => [-1, 3, 4, 5].map((j) => [i, j].filter((k) => k >= 0)))
+    const fits = sets.map((zero) => fitModel(twoFactors(zero), moments, settings).fit)
+    const proper = fits.filter(
+      (fit) => fit.state === 'fitted' && fit.estimates.every((e) => e.part !== 'residual variance' || e.estimate! > -1e-9)
+    )
+    return Math.min(...proper.map((fit) => fit.T!))
+  }
+
+  it('give the best of all the fits with cells fixed at 0', () => {
+    const bounds = indices.map((i): CellBound => ({ label: `t${i}`, least: 0, most: null }))
+    let active = 0
+    for (let sample = 0; sample < 7; sample++) {
+      const moments = draw(25 + 5 * sample)
+      const { fit } = fitModel({ ...twoFactors([]), bounds }, moments, settings)
+      expect(fit.state, fit.reason ?? '').toBe('fitted')
+      if (fit.bounds.some((bound) => bound.active !== null)) active++
+      near(fit.T, bestOfAll(moments), 1e-6)
+    }
+    expect(active).toBeGreaterThan(2)
   })
 })

@@ -3,10 +3,13 @@
  *
  * In a real Chromium on the real loopback host; where there is no browser, window.test.ts says so.
  */
+import { writeFileSync } from 'node:fs'
+import { join } from 'node:path'
 import type { Browser, Locator, Page } from 'playwright-core'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import { shareInWords } from '../../src-renderer/stability/shares.ts'
 import { bounded, fixed } from '../../src-renderer/state/format.ts'
+import { temporaryFolder } from '../shells/program.ts'
 import { findBrowser, launchBrowser } from './browser.ts'
 import { type Host, startHost } from './host.ts'
 import { seriousProblems, takePictures, textOf, watchFaults } from './looking.ts'
@@ -14,6 +17,29 @@ import { seriousProblems, takePictures, textOf, watchFaults } from './looking.ts
 /** How long a click may wait for its target, in ms: well over what a busy machine needs. */
 const patience = 40_000
 const executable = findBrowser(process.env)
+const overTime = `study: Calm, twice
+data:
+  file: calm.csv
+  indicators: [sit, walk, read, sit again, walk again, read again]
+candidates:
+  Calm:
+    factors: { Calm: [sit, walk, read] }
+`
+/** Three answers of 300 people at two occasions, drawn from one factor a time with a fixed generator. */
+function twoOccasions(): string {
+  let state = 20_240
+  const uniform = () => {
+    state = (state * 48_271) % 2_147_483_647
+    return state / 2_147_483_647
+  }
+  const normal = () => Math.sqrt(-2 * Math.log(uniform())) * Math.cos(2 * Math.PI * uniform())
+  const rows = Array.from({ length: 300 }, () => {
+    const first = normal()
+    const second = 0.6 * first + 0.8 * normal() + 0.3
+    return [first, second].flatMap((factor) => [1, 0.8, 0.9].map((loading) => (loading * factor + 0.6 * normal()).toFixed(4)))
+  })
+  return ['sit,walk,read,sit again,walk again,read again', ...rows.map((row) => row.join(','))].join('\n')
+}
 const partial = 'Three factors, scalar but for coldness and taps in Weir Lane'
 
 describe.runIf(executable !== null)('a step that does not hold, in the window', () => {
@@ -73,6 +99,9 @@ describe.runIf(executable !== null)('a step that does not hold, in the window', 
     await dialog.waitFor({ state: 'detached' })
     const made = 'Three factors, scalar but for bags in Old Mill'
     await expect.poll(rungNames).toContain(made)
+    expect(
+      await page.getByRole('tab', { name: 'Across clinics, scalar but for bags in Old Mill' }).getAttribute('aria-selected')
+    ).toBe('true')
     expect(await textOf(page.locator(`[data-testid=rung][data-name="${made}"]`))).toContain('added after results')
     await page.getByRole('tab', { name: 'Across clinics', exact: true }).click()
   })
@@ -117,6 +146,8 @@ describe.runIf(executable !== null)('a step that does not hold, in the window', 
     const table = page.getByTestId('effect-sizes').getByRole('table', { name: 'Larch Hill and Weir Lane' })
     await table.waitFor()
     expect(await textOf(table.getByRole('row', { name: /^coldness/ }))).toContain(bounded(largest.dmacs))
+    await table.scrollIntoViewIfNeeded()
+    await takePictures(page, 'window-effect-sizes')
     const means = page.getByTestId('latent-means')
     await means.getByRole('table').waitFor()
     const first = differences[0]!
@@ -223,13 +254,83 @@ describe.runIf(executable !== null)('a step that does not hold, in the window', 
     await dialog.getByRole('button', { name: 'Resample again' }).click()
     await dialog
       .getByRole('status')
-      .filter({ hasText: /Resampling \d\d+ of 100000/ })
+      .filter({ hasText: /Resampling \d\d+ of 100\u2006000/ })
       .waitFor()
     await takePictures(page, 'window-resampling')
     await dialog.getByRole('button', { name: 'Stop' }).click()
     await dialog.getByText(/of 100\u2006000 resamples, then stopped/).waitFor()
     await page.keyboard.press('Escape')
     await dialog.waitFor({ state: 'detached' })
+  })
+
+  test('holds factor variances and means equal on demand, each on a ladder of its own', async () => {
+    await page.getByRole('button', { name: 'New ladder' }).click()
+    const dialog = page.getByRole('dialog')
+    await dialog.getByLabel('Name', { exact: true }).fill('Clinics')
+    await dialog.getByLabel('Invariance across clinic').check()
+    await dialog.getByRole('combobox', { name: 'Candidate' }).selectOption('Two factors')
+    await dialog.getByLabel('Up to').selectOption('metric')
+    for (const set of ['factor variances', 'factor covariances']) await dialog.getByLabel(set).check()
+    expect(await seriousProblems(page)).toEqual([])
+    await takePictures(page, 'window-new-ladder')
+    await dialog.getByRole('button', { name: 'Add ladder' }).click()
+    await dialog.waitFor({ state: 'detached' })
+    await page.getByRole('button', { name: /^Fit \d+ drafts$/ }).click()
+    await page.getByRole('tab', { name: 'Clinics, factor variances' }).click()
+    await expect.poll(rungNames).toEqual(['Two factors, metric, equal factor variances', 'Two factors, metric'])
+    await expect.poll(() => page.getByTestId('step').count(), { timeout: patience }).toBe(1)
+  })
+
+  test('fits its panels into a narrow window and text twice as large, without scrolling sideways', async () => {
+    await page.getByRole('tab', { name: 'Across clinics, partial scalar' }).click()
+    await page.getByRole('button', { name: partial, exact: true }).first().click()
+    await page.getByRole('tab', { name: 'By group' }).click()
+    await page.getByTestId('latent-means').getByRole('table').waitFor()
+    for (const [width, size] of [
+      [390, '100%'],
+      [1280, '200%']
+    ] as const) {
+      await page.setViewportSize({ width, height: 900 })
+      await page.evaluate(`document.documentElement.style.fontSize = '${size}'`)
+      for (const place of ['Ladder', 'Family']) {
+        await page.getByRole('tab', { name: place, exact: true }).click()
+        await page.getByRole('status').filter({ hasText: 'Working out' }).waitFor({ state: 'detached' })
+        const overflow = await page.evaluate('document.documentElement.scrollWidth - document.documentElement.clientWidth')
+        await page.screenshot({ path: `artifacts/window-four-${place}-${width}.png`, fullPage: true })
+        expect({ width, size, place, overflow }).toEqual({ width, size, place, overflow: 0 })
+      }
+    }
+    await page.evaluate("document.documentElement.style.fontSize = ''")
+    await page.setViewportSize({ width: 1600, height: 1000 })
+  })
+
+  test('climbs a ladder over time, its occasions proposed from the columns that follow', async () => {
+    const folder = temporaryFolder()
+    try {
+      writeFileSync(join(folder.path, 'calm.csv'), twoOccasions())
+      writeFileSync(join(folder.path, 'plan.yaml'), overTime)
+      await host.ask('openPlan', { path: join(folder.path, 'plan.yaml') })
+      await page.reload()
+      await page.getByRole('button', { name: 'New ladder' }).first().click()
+      const dialog = page.getByRole('dialog')
+      await dialog.getByLabel('Name', { exact: true }).fill('Over the winter')
+      await dialog.getByLabel('Invariance over time').check()
+      expect(await dialog.getByLabel('read at occasion 2').inputValue()).toBe('read again')
+      await dialog.getByLabel('Name of occasion 2').fill('winter')
+      await dialog.getByLabel('walk at occasion 2').selectOption('')
+      expect(await dialog.getByRole('button', { name: 'Add ladder' }).isDisabled()).toBe(true)
+      await dialog.getByLabel('walk at occasion 2').selectOption('walk again')
+      expect(await seriousProblems(page)).toEqual([])
+      await takePictures(page, 'window-over-time')
+      await dialog.getByRole('button', { name: 'Add ladder' }).click()
+      await dialog.waitFor({ state: 'detached' })
+      await page.getByRole('button', { name: /^Fit \d+ drafts$/ }).click()
+      await expect.poll(() => page.getByTestId('step').count(), { timeout: patience }).toBe(2)
+      expect(await rungNames()).toEqual(['scalar', 'metric', 'configural'].map((level) => `Calm, ${level} over time`))
+      await takePictures(page, 'window-over-time-climbed')
+    } finally {
+      folder.remove()
+    }
   })
 
   test('saw no fault, no warning and no request to another machine', () => {

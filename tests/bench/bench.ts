@@ -13,7 +13,8 @@ import { compileModel } from '../../src-main/statistics/model/compile.ts'
 import { completeCaseMoments, type SampleMoments } from '../../src-main/statistics/moments/sample-moments.ts'
 import { groupNames, ladderCells, oneGroupCells, patternMoments, rowsWithHoles } from './cases.ts'
 import { simulate, simulateRows } from './simulate.ts'
-import { exponent, median, referenceLoop, type Timing, time } from './timing.ts'
+import { stabilityTiming } from './stability.ts'
+import { exponent, referenceLoop, type Timing, time } from './timing.ts'
 
 const settings = { convention: 'normal' as const }
 const scaledSettings = { convention: 'normal', statistic: 'mean-scaled', standardErrors: 'robust' } as const
@@ -108,9 +109,9 @@ function scalarFit(p: number, m: number, groups: number, n: number, repeats: num
   return time(name, repeats, target, () => fitModel(cells, moments, settings))
 }
 
-/** Times over growing sizes, and the power that fits them. */
+/** Fastest times over growing sizes, and the power that fits them. */
 function growth(name: string, sizes: readonly number[], work: (size: number) => () => unknown): string {
-  const times = sizes.map((size) => time('', 5, null, work(size)).median)
+  const times = sizes.map((size) => time('', 7, null, work(size)).fastest)
   const each = sizes.map((size, i) => `${size}: ${times[i]!.toFixed(2)} ms`).join(', ')
   return `time grows with ${name} to the power ${exponent(sizes, times).toFixed(2)} (${each})`
 }
@@ -142,10 +143,11 @@ const timings = [
   scaledTiming,
   scalarFit(120, 12, 6, 400, 3, 3000)
 ]
-console.log('median ms   ratio to reference   target ms')
-for (const { name, median: ms, target } of timings) {
+console.log('median ms  fastest ms   ratio to reference   target ms')
+for (const { name, median: ms, fastest, target } of timings) {
   const numbers = [
     ms.toFixed(3).padStart(9),
+    fastest.toFixed(3).padStart(11),
     (ms / reference.median).toFixed(2).padStart(20),
     (target === null ? '' : `< ${target}`).padStart(11)
   ]
@@ -154,20 +156,25 @@ for (const { name, median: ms, target } of timings) {
 console.log(`peak memory of the scaled statistic: ${memory.toFixed(0)} MB more than before it (target < 300)`)
 
 console.log(growth('p in one fit, ten indicators a factor', [20, 40, 80, 160], (p) => growthOfFit(p, p / 10)))
-console.log(growth('q in one fit, 48 indicators, q by the factors 1, 3, 8 and 16', parametersOf([1, 3, 8, 16]), fitWithParameters))
 console.log(growth('N in a scaled statistic, 20 indicators', [1000, 4000, 16_000], (n) => scaledFit(n, 20, 4).fit))
 console.log(growth('N in full information, 20 indicators, N / 25 patterns', [1000, 2000, 4000], fullInformationOf))
-console.log(growth('the number of groups, 40 indicators, equal intercepts', [2, 4, 8], (g) => groupsOf(g)))
-console.log(`reference loop at the end: ${median([time('', 20, null, referenceLoop).median]).toFixed(3)} ms`)
+console.log(
+  growth('q in one fit, 40 indicators with equal intercepts in 2, 4 and 8 groups', parametersOf([2, 4, 8]), fitWithParameters)
+)
 
-/** q of 48 indicators on so many factors. */
-function parametersOf(factors: readonly number[]): number[] {
-  return factors.map((m) => compileModel(oneGroupCells(48, m)).parameters)
+const stability = await stabilityTiming()
+const seconds = (stability.milliseconds / 1000).toFixed(1)
+console.log(
+  `${stability.name}, ${stability.threads} threads: ${seconds} s (target < ${stability.target / 1000} s), ${stability.failed} fits failed`
+)
+
+/** q of equal intercepts in so many groups. */
+function parametersOf(groups: readonly number[]): number[] {
+  return groups.map((g) => compileModel(ladderCells(40, 4, g)[2]!).parameters)
 }
 
 function fitWithParameters(q: number): () => unknown {
-  const m = [1, 3, 8, 16].find((factors) => parametersOf([factors])[0] === q)!
-  return growthOfFit(48, m)
+  return groupsOf([2, 4, 8].find((groups) => parametersOf([groups])[0] === q)!)
 }
 
 function fullInformationOf(n: number): () => unknown {

@@ -4,6 +4,8 @@ export interface Timing {
   name: string
   /** Milliseconds. */
   median: number
+  /** The fastest repeat: what the median would be on a machine that does nothing else. */
+  fastest: number
   target: number | null
 }
 
@@ -21,7 +23,7 @@ export function time(name: string, repeats: number, target: number | null, work:
     work()
     times.push(performance.now() - start)
   }
-  return { name, median: median(times), target }
+  return { name, median: median(times), fastest: Math.min(...times), target }
 }
 
 const a = Float64Array.from({ length: 1000 }, (_, i) => Math.sin(i))

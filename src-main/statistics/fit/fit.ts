@@ -51,8 +51,10 @@ export function fitModel(
   if (unknown.length > 0 || best.stop !== 'converged') {
     const generic = unidentifiedLabels(model, moments, seededGenerator(startSeed))
     const labels = generic.length > 0 ? generic : unknown
-    if (labels.length > 0) return fail('not identified', notIdentifiedReason(model, labels, generic.length > 0), convergence)
-    return fail('not converged', stopReasons[best.stop] + runawaySentence(model, objective, best.gamma), convergence)
+    const runaway = generic.length > 0 ? '' : runawaySentence(model, objective, best.gamma)
+    if (labels.length > 0)
+      return fail('not identified', notIdentifiedReason(model, labels, generic.length > 0) + runaway, convergence)
+    return fail('not converged', stopReasons[best.stop] + runaway, convergence)
   }
 
   objective.evaluate(best.gamma)

@@ -27,7 +27,9 @@ describe('a fit whose F falls without end', () => {
   it('names the variance that runs away, and what to do', () => {
     const { fit } = fitModel(cells, moments, { convention: 'normal' })
     expect(fit.state).toBe('not converged')
-    expect(fit.reason).toMatch(/Negative by then: the residual variance of y1 \(-\d+\.\d\)\. F may fall without end/)
+    expect(fit.reason).toMatch(
+      /Negative where the search stopped: the residual variance of y1 \(-\d+\.\d\)\. F may fall without end/
+    )
   })
 
   it('is fitted once that variance is bounded at 0', () => {

@@ -20,5 +20,5 @@ export function runawaySentence(model: CompiledModel, objective: Objective, gamm
       .map(([words, value]) => `${words} (${value.toPrecision(3)})`)
   })
   if (found.length === 0) return ''
-  return ` Negative by then: ${listed(found)}. F may fall without end there and have no minimum; a bound at 0 gives it one.`
+  return ` Negative where the search stopped: ${listed(found)}. F may fall without end there and have no minimum; a bound at 0 gives it one.`
 }

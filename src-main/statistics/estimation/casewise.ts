@@ -5,10 +5,10 @@
  *
  *     d l_i / d cell = c (x_u x_v - G[u,v]) + w x_s
  */
-import { cholesky, choleskyInverse, multiply } from '../matrix/symmetric.ts'
+import { cholesky, choleskyInverse, dotRows, multiply } from '../matrix/symmetric.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { GroupState } from '../model/implied-moments.ts'
-import { cellColumns, columnDot, sideBySide, wholeForm } from './cell-columns.ts'
+import { cellColumns, sideBySide, wholeForm } from './cell-columns.ts'
 
 /**
  * Calls `visit` once a row with the row's score (q, reused between calls).
@@ -104,22 +104,29 @@ function groupScorer(model: CompiledModel, g: number, state: GroupState): Scorer
   const d = new Float64Array(p)
   const z = new Float64Array(p)
   const x = new Float64Array(size)
+  const weight = Float64Array.from(meanFactor, (k) => (k < 0 ? 1 : state.factorMean[k]!))
+  const expected = new Float64Array(u.length)
+  // By columns, so that a column of B stands along memory.
+  const byColumn = new Float64Array(p * 2 * m)
+  for (let i = 0; i < p; i++) for (let k = 0; k < 2 * m; k++) byColumn[k * p + i] = columns[i * 2 * m + k]!
   let seen = new Int32Array()
   return {
     prepare(observed) {
       seen = Int32Array.from(observed)
       paddedInverse(state.sigma, p, observed, padded)
       wholeForm(padded, columns, p, size, product, gram)
+      for (let i = 0; i < u.length; i++) expected[i] = u[i]! < 0 ? 0 : c[i]! * gram[u[i]! * size + v[i]!]!
     },
     score(values, start, score) {
       d.fill(0)
       for (const i of seen) d[i] = values[start + i]! - state.mu[i]!
       multiply(padded, d, p, p, 1, z)
-      for (let k = 0; k < size; k++) x[k] = columnDot(z, columns, p, size - p, k)
+      x.set(z)
+      for (let k = 0; k < 2 * m; k++) x[p + k] = dotRows(byColumn, k * p, z, 0, p)
       score.fill(0)
       for (let i = 0; i < u.length; i++) {
-        let value = u[i]! < 0 ? 0 : c[i]! * (x[u[i]!]! * x[v[i]!]! - gram[u[i]! * size + v[i]!]!)
-        if (s[i]! >= 0) value += (meanFactor[i]! < 0 ? 1 : state.factorMean[meanFactor[i]!]!) * x[s[i]!]!
+        let value = u[i]! < 0 ? 0 : c[i]! * x[u[i]!]! * x[v[i]!]! - expected[i]!
+        if (s[i]! >= 0) value += weight[i]! * x[s[i]!]!
         const { gammas, weights } = group.free[i]!
         for (let k = 0; k < gammas.length; k++) score[gammas[k]!]! += weights[k]! * value
       }

@@ -271,6 +271,10 @@ export function mirrorLower(a: Float64Array, n: number): void {
 
 /** c = a b for a (rows x inner) and b (inner x columns), row-major; `c` must not share memory with a or b. */
 export function multiply(a: Float64Array, b: Float64Array, rows: number, inner: number, columns: number, c: Float64Array): void {
+  if (columns === 1) {
+    for (let i = 0; i < rows; i++) c[i] = dotRows(a, i * inner, b, 0, inner)
+    return
+  }
   const whole = inner - (inner % 4)
   for (let i = 0; i < rows; i++) {
     const ri = i * columns

@@ -32,7 +32,6 @@ async function main(): Promise<void> {
   findings.sort((a, b) => a.index - b.index)
   const text = report(findings, seed)
   console.log(`${text}\n${Math.round((performance.now() - started) / 1000)} seconds with ${workers} workers`)
-  for (const finding of findings.filter(bad)) console.log(describe(finding))
   if (models === fullStudy) writeFileSync(fileURLToPath(new URL('./convergence.md', import.meta.url)), text)
 }
 
@@ -48,10 +47,11 @@ function bad(finding: Finding): boolean {
   return finding.state !== 'fitted' || finding.beatenBy > 0 || finding.wronglyTold
 }
 
-function describe({ index, design, n, state, reason, beatenBy, wronglyTold, starts, others }: Finding): string {
-  const { kind, factors, indicators, groups, level, scaling, misfit, patterns } = design
-  const what = `${indicators} on ${factors} in ${groups} (n ${n}, ${patterns} patterns): ${kind}, ${level}, ${scaling}, misfit ${misfit}`
-  return `#${index} ${state}${wronglyTold ? ' WRONGLY' : ''}, beaten by ${beatenBy.toExponential(1)}, ${starts} starts, ${others} others: ${what} ${reason ?? ''}`
+function describe({ index, design, n, state, reason, beatenBy, wronglyTold, others }: Finding): string {
+  const { kind, factors, indicators, groups, level, scaling, patterns } = design
+  const what = `${indicators} indicators on ${factors} factors in ${groups} groups, N = ${n}, ${patterns} patterns, ${kind}, ${level}, ${scaling}`
+  const beaten = beatenBy > 0 ? `, beaten by ${beatenBy.toExponential(1)}` : ''
+  return `- ${index}: ${state}${wronglyTold ? ', wrongly' : ''}${beaten} (${what}; ${others} of ${furtherStarts} further starts converge). ${reason ?? ''}`
 }
 
 interface SizeClass {
@@ -88,8 +88,9 @@ function report(findings: Finding[], seed: number): string {
   ]
   const lines = classes.map(({ name, holds }) => [name, ...counts(findings.filter(holds))])
   const others = findings.reduce((sum, finding) => sum + finding.others, 0)
+  const rest = findings.filter(bad).map(describe)
   const table = [head, head.map(() => '---'), ...lines].map((row) => `| ${row.join(' | ')} |`).join('\n')
-  return `${findings.length} random models, seed ${seed}. ${others} of ${furtherStarts * findings.length} further starts converged; a minimum is the smallest seen when none of them ended lower. Times are a fit's processor time.\n\n${table}\n`
+  return `${findings.length} random models, seed ${seed}. ${others} of ${furtherStarts * findings.length} further starts converged; a minimum is the smallest seen when none of them ended lower. Times are a fit's processor time.\n\n${table}\n${rest.length > 0 ? `\nThe others, by number:\n\n${rest.join('\n')}\n` : ''}`
 }
 
 function counts(of: Finding[]): string[] {

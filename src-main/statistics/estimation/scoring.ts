@@ -4,7 +4,8 @@
  * Each iteration solves with the expected second derivatives at the current point, corrected by up to eight pairs of
  * (step, gradient change) through the two-loop recursion (Nocedal & Wright 2006, algorithm 7.4), so that a badly fitting
  * model, where scoring alone is only linearly convergent, still ends fast. A damped matrix (Levenberg 1944; Marquardt
- * 1963) takes over where the information is singular or a step does not descend.
+ * 1963) takes over where the information is singular or a step does not descend, and the observed second derivatives where
+ * all that has not ended after many iterations: in the long flat valleys that lead to improper solutions.
  */
 import { cholesky, choleskySolve, envelope } from '../matrix/symmetric.ts'
 import type { Objective } from './normal-likelihood.ts'
@@ -36,6 +37,8 @@ export interface Minimum {
 
 const pairsKept = 8
 const halvings = 10
+/** Iterations of scoring before the observed second derivatives take over; ordinary models need some ten. */
+const scoringSteps = 60
 
 /** Minimises from `start` (length q, left untouched). Never throws: how it ended is `stop`. */
 export function minimise(objective: Objective, start: Float64Array, settings: ScoringSettings = ordinaryScoring): Minimum {
@@ -54,6 +57,7 @@ export function minimise(objective: Objective, start: Float64Array, settings: Sc
   objective.derive(point.gradient, point.curvature)
   const search: Search = {
     objective,
+    newton: null,
     pairs: [],
     damping: 0,
     trial: new Float64Array(q),
@@ -62,8 +66,10 @@ export function minimise(objective: Objective, start: Float64Array, settings: Sc
     first: new Int32Array(q)
   }
   for (; point.iterations < settings.iterations; point.iterations++) {
+    if (point.iterations === scoringSteps) turnToNewton(search, point)
     point.largestGradient = scaledGradient(point.gradient, point.curvature)
-    if (point.largestGradient < settings.tolerance || point.value < (settings.enough ?? Number.NEGATIVE_INFINITY)) {
+    const still = point.largestGradient < settings.tolerance && nothingToGain(search, point)
+    if (still || point.value < (settings.enough ?? Number.NEGATIVE_INFINITY)) {
       point.stop = 'converged'
       break
     }
@@ -78,6 +84,8 @@ export function minimise(objective: Objective, start: Float64Array, settings: Sc
 
 interface Search {
   objective: Objective
+  /** Observed second derivatives at the current point, once scoring has had its turn. */
+  newton: Float64Array | null
   pairs: { s: Float64Array; y: Float64Array; rho: number }[]
   damping: number
   trial: Float64Array
@@ -97,6 +105,28 @@ function scaledGradient(gradient: Float64Array, curvature: Float64Array): number
   return largest
 }
 
+/** Where scoring has not ended by now, F is far from what it expects: the observed second derivatives take over. */
+function turnToNewton(search: Search, point: Minimum): void {
+  search.newton = new Float64Array(point.curvature.length)
+  search.pairs = []
+  search.damping = 0
+  search.objective.evaluate(point.gamma)
+  search.objective.derive(new Float64Array(point.gradient.length), search.newton, 'observed')
+}
+
+/**
+ * On the way to infinity slopes vanish too, but a Newton step would still gain something: g'H^-1 g / 2 is about what is left
+ * to gain. Asked only after the turn to Newton; scoring does not come that far out.
+ */
+function nothingToGain(search: Search, point: Minimum): boolean {
+  if (search.newton === null) return true
+  search.damping = 0
+  if (!factorDamped(search, point.curvature)) return false
+  search.direction.set(point.gradient)
+  choleskySolve(search.factor, search.direction.length, search.direction, search.first)
+  return dot(point.gradient, search.direction) / 2 < 1e-12
+}
+
 /** One accepted step from `point`, or false when no step descends at any damping. */
 function advance(search: Search, point: Minimum): boolean {
   for (let attempt = 0; attempt < 40; attempt++) {
@@ -111,13 +141,13 @@ function advance(search: Search, point: Minimum): boolean {
   return false
 }
 
-/** factor = cholesky(H + damping diag H) */
+/** factor = cholesky(H + damping D), H the second derivatives in use and D the expected ones' diagonal */
 function factorDamped(search: Search, curvature: Float64Array): boolean {
   const q = search.direction.length
-  search.factor.set(curvature)
+  search.factor.set(search.newton ?? curvature)
   for (let k = 0; k < q; k++) {
-    const h = curvature[k * q + k]!
-    search.factor[k * q + k] = h * (1 + search.damping) + (h > 0 ? 0 : search.damping)
+    const d = curvature[k * q + k]!
+    search.factor[k * q + k]! += search.damping * (d > 0 ? d : 1)
   }
   envelope(search.factor, q, search.first)
   return cholesky(search.factor, q, search.factor, search.first)
@@ -173,6 +203,10 @@ function accept(search: Search, point: Minimum, value: number): void {
   point.gamma.set(search.trial)
   point.value = value
   search.objective.derive(point.gradient, point.curvature)
+  if (search.newton !== null) {
+    search.objective.derive(point.gradient, search.newton, 'observed')
+    return
+  }
   for (let k = 0; k < q; k++) y[k]! += point.gradient[k]!
   const curvature = dot(s, y)
   if (curvature > 1e-10 * Math.sqrt(dot(s, s) * dot(y, y))) {

@@ -52,7 +52,8 @@ export function fitModel(
     const generic = unidentifiedLabels(model, moments, seededGenerator(startSeed))
     const labels = generic.length > 0 ? generic : unknown
     const runaway = generic.length > 0 ? '' : runawaySentence(model, objective, best.gamma)
-    if (labels.length > 0)
+    const drifts = best.stop !== 'converged' && runaway !== ''
+    if (labels.length > 0 && !drifts)
       return fail('not identified', notIdentifiedReason(model, labels, generic.length > 0) + runaway, convergence)
     return fail('not converged', stopReasons[best.stop] + runaway, convergence)
   }

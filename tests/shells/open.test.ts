@@ -51,10 +51,11 @@ describe('open without a desktop', () => {
 if (desktop !== null) {
   describe('open with a desktop', () => {
     test('opens a window, prints no link, and ends with status 0 on an interrupt', async () => {
-      const child = start(['open'])
+      // A profile of its own: two windows at once, each in its own test, must not share one.
+      const child = start(['open'], { environment: { ...process.env, XDG_CONFIG_HOME: folder.path } })
       const printed: string[] = []
       child.stdout!.setEncoding('utf8').on('data', (text: string) => printed.push(text))
-      await wait(3000)
+      await wait(8000)
       expect(child.exitCode).toBeNull()
       child.kill('SIGINT')
       expect((await once(child, 'exit'))[0]).toBe(0)

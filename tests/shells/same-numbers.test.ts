@@ -11,7 +11,7 @@ import type { Answer, Client, OperationName, Operations, WorkEvent } from '../..
 import { statistic } from '../../src-main/reporting/numbers.ts'
 import { runtimeArguments } from '../../src-main/shells/electron-runtime.ts'
 import type { StudyResult } from '../../src-main/study/result.ts'
-import { desktop, launcher, machineNode, resultOf, root, whyNoDesktop } from './program.ts'
+import { desktop, launcher, machineNode, resultOf, root, temporaryFolder, whyNoDesktop } from './program.ts'
 
 /** What the tests touch inside the page. */
 interface Page {
@@ -118,10 +118,16 @@ if (desktop === null) {
   const executablePath = desktop
   describe('the desktop window', () => {
     let app: ElectronApplication
+    const profile = temporaryFolder()
     beforeAll(async () => {
-      app = await _electron.launch({ executablePath, args: ['--disable-gpu', ...runtimeArguments('.', null)], cwd: root })
+      const args = ['--disable-gpu', ...runtimeArguments('.', null)]
+      const env = { ...process.env, XDG_CONFIG_HOME: profile.path } as Record<string, string>
+      app = await _electron.launch({ executablePath, args, cwd: root, env, timeout: 60_000 })
     })
-    afterAll(() => app.close())
+    afterAll(async () => {
+      await app.close()
+      profile.remove()
+    })
 
     test('opens on the sample study, fits it and shows its ladder, top rung first', async () => {
       const window = await app.firstWindow()

@@ -12,6 +12,7 @@ import { fitModel } from '../../src-main/statistics/fit/fit.ts'
 import { compileModel } from '../../src-main/statistics/model/compile.ts'
 import { completeCaseMoments, type SampleMoments } from '../../src-main/statistics/moments/sample-moments.ts'
 import { groupNames, ladderCells, oneGroupCells, patternMoments, rowsWithHoles } from './cases.ts'
+import { relationsTiming } from './relations.ts'
 import { simulate, simulateRows } from './simulate.ts'
 import { stabilityTiming } from './stability.ts'
 import { exponent, referenceLoop, type Timing, time } from './timing.ts'
@@ -162,10 +163,17 @@ console.log(
   growth('q in one fit, 40 indicators with equal intercepts in 2, 4 and 8 groups', parametersOf([2, 4, 8]), fitWithParameters)
 )
 
+for (const { name, median, refits, pairs, target } of relationsTiming()) {
+  const ratio = (median / reference.median).toFixed(0)
+  console.log(
+    `${name}: ${median.toFixed(0)} ms, ${ratio} times the reference (target < ${target} ms); ${refits} of ${pairs} pairs refitted`
+  )
+}
+
 const stability = await stabilityTiming()
 const seconds = (stability.milliseconds / 1000).toFixed(1)
 console.log(
-  `${stability.name}, ${stability.threads} threads: ${seconds} s (target < ${stability.target / 1000} s), ${stability.failed} fits failed`
+  `${stability.name}, ${stability.threads} threads: ${seconds} s, ${(stability.milliseconds / reference.median).toFixed(0)} times the reference (target < ${stability.target / 1000} s), ${stability.failed} fits failed`
 )
 
 /** q of equal intercepts in so many groups. */

@@ -75,8 +75,8 @@ function indicesWhere(count: number, holds: (i: number) => boolean): Int32Array 
   return Int32Array.from(found)
 }
 
-/** Adds this group's observed second derivatives, with or without those of Sigma and mu themselves; the gradient must have been made before. */
-export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q: number, secondOrder: boolean): void {
+/** Adds this group's observed second derivatives; the gradient must have been made before. */
+export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q: number): void {
   const { p, size, u, v, c, s, meanWeight, columns } = work
   const gram = new Float64Array(size * size)
   const square = new Float64Array(size * size)
@@ -102,7 +102,6 @@ export function addObservedCurvature(work: GroupWork, curvature: Float64Array, q
       }
     }
   }
-  if (!secondOrder) return
   addSecondOrder(work, (i, j, value) => {
     addPair(work, curvature, q, i, j, work.weight * value)
   })

@@ -23,8 +23,7 @@ import { patternValue, prepareDerivatives, prepareStructure } from './pattern-va
 import type { GroupWork, PatternWork, StructureWork } from './work.ts'
 
 export type Convention = 'normal' | 'wishart'
-/** tangent: observed, but with the second derivatives of the moments themselves left out (Delta' A Delta of scaling-missing.ts). */
-export type CurvatureKind = 'expected' | 'observed' | 'tangent'
+export type CurvatureKind = 'expected' | 'observed'
 
 /** F of one model on one set of moments, as the optimiser sees it. Not re-entrant: its work space is shared by all calls. */
 export interface Objective {
@@ -82,10 +81,8 @@ export function normalObjective(model: CompiledModel, moments: SampleMoments, co
       for (const work of groups) addGradient(work, gradient)
       if (curvature === undefined) return
       curvature.fill(0)
-      for (const work of groups) {
-        if (kind === 'expected') addExpectedCurvature(work, curvature, model.parameters)
-        else addObservedCurvature(work, curvature, model.parameters, kind === 'observed')
-      }
+      const add = kind === 'expected' ? addExpectedCurvature : addObservedCurvature
+      for (const work of groups) add(work, curvature, model.parameters)
     }
   }
 }

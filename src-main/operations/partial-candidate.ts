@@ -5,7 +5,7 @@
 import { canonicalJson } from '../project/canonical-json.ts'
 import { cellWords, listed } from '../statistics/model/cell-words.ts'
 import { resolveCandidate } from '../study/candidate-model.ts'
-import type { Candidate, CellPart, EqualSet, Release } from '../study/study.ts'
+import { type Candidate, type CellPart, type EqualSet, type Release, setOfPart } from '../study/study.ts'
 import type { Family } from './family.ts'
 
 /**
@@ -37,17 +37,6 @@ function withReleases(base: Candidate, releases: readonly Release[], generated: 
     except: [...releases],
     change: []
   }
-}
-
-const setOfPart: Record<CellPart, EqualSet> = {
-  loading: 'loadings',
-  'factor regression': 'loadings',
-  intercept: 'intercepts',
-  'residual variance': 'residual variances',
-  'residual covariance': 'residual covariances',
-  'factor variance': 'factor variances',
-  'factor covariance': 'factor covariances',
-  'factor mean': 'factor means'
 }
 
 /** Whether the candidate holds the parts of these cells equal across groups, so that they can be let go. */

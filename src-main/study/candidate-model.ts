@@ -19,9 +19,11 @@ import {
   type Change,
   type EqualSet,
   type Factor,
+  kindsOfPart,
   namesOfPart,
   type Release,
-  type Scaling
+  type Scaling,
+  setOfPart
 } from './study.ts'
 
 /** A candidate with nothing left to its parents. */
@@ -85,17 +87,6 @@ function derive(parent: ResolvedCandidate | null, own: Candidate): ResolvedCandi
 /** The cells of a candidate on data of this frame. Throws InputError naming the candidate and the cell. */
 export function candidateCells(candidate: ResolvedCandidate, frame: ModelFrame): ModelCells {
   return new CellBuilder(candidate, frame).build()
-}
-
-const setOfPart: Record<CellPart, EqualSet> = {
-  loading: 'loadings',
-  'factor regression': 'loadings',
-  intercept: 'intercepts',
-  'residual variance': 'residual variances',
-  'residual covariance': 'residual covariances',
-  'factor variance': 'factor variances',
-  'factor covariance': 'factor covariances',
-  'factor mean': 'factor means'
 }
 
 class CellBuilder {
@@ -316,17 +307,7 @@ class CellBuilder {
   private checkCell(cell: CellName): void {
     const { part, of } = cell
     if (of.length !== namesOfPart[part]) this.fail(`a ${part} takes ${namesOfPart[part]} name(s), not ${of.length}`)
-    const kinds: Record<CellPart, ('indicator' | 'factor')[]> = {
-      loading: ['indicator', 'factor'],
-      'residual variance': ['indicator'],
-      'residual covariance': ['indicator', 'indicator'],
-      'factor variance': ['factor'],
-      'factor covariance': ['factor', 'factor'],
-      intercept: ['indicator'],
-      'factor mean': ['factor'],
-      'factor regression': ['factor', 'factor']
-    }
-    kinds[part].forEach((kind, i) => {
+    kindsOfPart[part].forEach((kind, i) => {
       const known = kind === 'indicator' ? this.indicators : this.factorNames
       const name = of[i]!
       if (!known.includes(name))

@@ -2,8 +2,8 @@
  * Checks of the changes and exceptions of a candidate: every cell named must be one the model can have.
  */
 import { didYouMean, listed } from './nearest.ts'
-import { type Context, hasMeans, setOfPart, setsOf } from './plan-context.ts'
-import type { CellName, CellPart, Change, Release } from './study.ts'
+import { type Context, hasMeans, setsOf } from './plan-context.ts'
+import { type CellName, type Change, kindsOfPart, type Release, setOfPart } from './study.ts'
 
 export function checkRelease(context: Context, release: Release, path: string): void {
   const { lineage, fail } = context
@@ -81,18 +81,6 @@ function checkGroup({ plan, across, fail }: Context, group: string | null, path:
   if (plan.data.kind !== 'summary') return
   const groups = plan.data.groups.map((one) => one.name ?? '')
   if (!groups.includes(group)) fail(path, `There is no group "${group}".`, didYouMean(group, groups, 'groups'))
-}
-
-/** Which names a cell of each part takes, in order. */
-const kindsOfPart: Readonly<Record<CellPart, readonly ('indicator' | 'factor')[]>> = {
-  loading: ['indicator', 'factor'],
-  'residual variance': ['indicator'],
-  'residual covariance': ['indicator', 'indicator'],
-  'factor variance': ['factor'],
-  'factor covariance': ['factor', 'factor'],
-  intercept: ['indicator'],
-  'factor mean': ['factor'],
-  'factor regression': ['factor', 'factor']
 }
 
 function checkCell({ plan, factors, fail }: Context, cell: CellName, path: string): void {

@@ -1,7 +1,7 @@
 /**
  * What the checks of a plan share: the way to fail with a place, and a candidate seen with its ancestors.
  */
-import type { Candidate, CellPart, DataPlan, EqualSet, Factor, Plan } from './study.ts'
+import type { Candidate, DataPlan, EqualSet, Factor, Plan } from './study.ts'
 
 /** Throws an InputError placed at `path`, a path below what is being checked ("" or ".factors.0"). */
 export type Fail = (path: string, what: string, remedy?: string | null) => never
@@ -15,18 +15,6 @@ export interface Context {
   factors: Factor[]
   across: string | null
   fail: Fail
-}
-
-/** The set of `equal across groups` that each kind of cell belongs to; a factor's regressions are its loadings of second order. */
-export const setOfPart: Readonly<Record<CellPart, EqualSet>> = {
-  loading: 'loadings',
-  'factor regression': 'loadings',
-  intercept: 'intercepts',
-  'residual variance': 'residual variances',
-  'residual covariance': 'residual covariances',
-  'factor variance': 'factor variances',
-  'factor covariance': 'factor covariances',
-  'factor mean': 'factor means'
 }
 
 /** The candidate and its ancestors, root first. Parents must be known and must not run in a circle. */

@@ -15,6 +15,18 @@ const name = z.string().trim().min(1)
 
 export const cellPartSchema = z.enum(cellParts)
 
+/** Which names a cell of each part takes, in order. */
+export const kindsOfPart: Readonly<Record<CellPart, readonly ('indicator' | 'factor')[]>> = {
+  loading: ['indicator', 'factor'],
+  'residual variance': ['indicator'],
+  'residual covariance': ['indicator', 'indicator'],
+  'factor variance': ['factor'],
+  'factor covariance': ['factor', 'factor'],
+  intercept: ['indicator'],
+  'factor mean': ['factor'],
+  'factor regression': ['factor', 'factor']
+}
+
 /** How many names a cell of each part takes: one (an indicator or factor) or two. */
 export const namesOfPart: Readonly<Record<CellPart, 1 | 2>> = {
   loading: 2,
@@ -43,6 +55,18 @@ export const equalSets = [
 ] as const
 export const equalSetSchema = z.enum(equalSets)
 export type EqualSet = z.infer<typeof equalSetSchema>
+
+/** The set of `equal across groups` that each kind of cell belongs to; a factor's regressions are its loadings of second order. */
+export const setOfPart: Readonly<Record<CellPart, EqualSet>> = {
+  loading: 'loadings',
+  'factor regression': 'loadings',
+  intercept: 'intercepts',
+  'residual variance': 'residual variances',
+  'residual covariance': 'residual covariances',
+  'factor variance': 'factor variances',
+  'factor covariance': 'factor covariances',
+  'factor mean': 'factor means'
+}
 
 /** One term of a linear constraint: `times` the cell; `group` null means the group the constraint stands in. */
 export const constraintTermSchema = z.strictObject({

@@ -29,7 +29,8 @@ export async function climb(ladder: LadderPlan, input: ClimbInput, crew: Crew, s
     ladder.name,
     rungs,
     steps.map((step) => step.ground),
-    input.plan.rules
+    input.plan.rules,
+    input.results.find((result) => result.name === rungs[0]) ?? null
   )
 }
 

@@ -176,6 +176,13 @@ it('one stands nowhere when the bottom rung has no solution', () => {
   expect(ladderResult('l', ['a', 'b'], [ground(failed, cleared, { relation: null })], rules()).standHere).toBeNull()
 })
 
+it('one stands on a single rung where it has a solution, and nowhere where it has none', () => {
+  const failed = side('a', 0, 20, { state: 'not identified', T: null, reason: 'x' })
+  expect(ladderResult('l', ['a'], [], rules(), cleared).standHere).toBe('a')
+  expect(ladderResult('l', ['a'], [], rules(), failed).standHere).toBeNull()
+  expect(ladderResult('l', ['a'], [], rules()).standHere).toBeNull()
+})
+
 it('differences are the upper value less the lower', () => {
   const result = step(side('b', 40, 22))
   expect(result.deltaCfi!).toBeLessThan(0)

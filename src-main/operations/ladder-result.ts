@@ -45,7 +45,14 @@ export interface BoundaryGround {
   beyond: boolean
 }
 
-export function ladderResult(name: string, rungs: string[], grounds: readonly StepGround[], rules: Rules): LadderResult {
+/** @param bottom the lowest rung's fit; needed where there is no step that brings it */
+export function ladderResult(
+  name: string,
+  rungs: string[],
+  grounds: readonly StepGround[],
+  rules: Rules,
+  bottom: CandidateResult | null = grounds[0]?.lower ?? null
+): LadderResult {
   const tests = grounds.map((ground) => testOf(ground, rules))
   const pValues = tests.filter((test) => test !== null).map((test) => test.p)
   const adjusted = holm(pValues)
@@ -54,7 +61,7 @@ export function ladderResult(name: string, rungs: string[], grounds: readonly St
     const test = tests[i]!
     return stepResult(ground, test, test === null || rules.adjust === 'none' ? null : adjusted[at++]!, rules)
   })
-  return { name, rungs, standHere: standHere(rungs, grounds, steps), steps }
+  return { name, rungs, standHere: bottom?.state === 'fitted' ? standHere(rungs, steps) : null, steps }
 }
 
 type StepTest = DifferenceTest & Pick<DifferenceResult, 'method' | 'scaling'> & { reference: MixturePart[] }
@@ -351,9 +358,7 @@ function check(
 }
 
 /** Climbs from the bottom while steps hold. */
-function standHere(rungs: string[], grounds: readonly StepGround[], steps: readonly StepResult[]): string | null {
-  const bottom = grounds[0]?.lower ?? null
-  if (grounds.length > 0 && bottom?.state !== 'fitted') return null
+function standHere(rungs: string[], steps: readonly StepResult[]): string | null {
   const stop = steps.findIndex((step) => step.verdict !== 'holds')
   return rungs[stop < 0 ? steps.length : stop] ?? null
 }

@@ -20,8 +20,15 @@ export interface BenchParts {
   version: string
 }
 
+/** What looking into a study needs: its project and who does the work. */
+export interface OpenStudy {
+  /** @throws InputError when no study is open */
+  requireProject(): Project
+  readonly parts: Pick<BenchParts, 'crew' | 'version'>
+}
+
 /** Owns the open project: one that is replaced is closed once no call works on it any more. */
-export class Bench {
+export class Bench implements OpenStudy {
   readonly parts: BenchParts
   readonly #listeners = new Set<(event: WorkEvent) => void>()
   readonly #retired = new Set<Project>()

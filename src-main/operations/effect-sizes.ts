@@ -5,7 +5,7 @@ import { fixed, index } from '../reporting/numbers.ts'
 import { type EffectSize, type MeasuredGroup, effectSizes as sizesOf } from '../statistics/invariance/effect-sizes.ts'
 import type { ModelCells } from '../statistics/model/cells.ts'
 import type { GroupMoments } from '../statistics/moments/sample-moments.ts'
-import type { Bench } from './bench.ts'
+import type { OpenStudy } from './bench.ts'
 import { type Comparison, comparableFactors } from './comparable-factors.ts'
 import type { EffectSizeView, Operations } from './contract.ts'
 import { fittedEntry, solutionOf } from './solved-candidate.ts'
@@ -13,8 +13,8 @@ import { fittedEntry, solutionOf } from './solved-candidate.ts'
 type EffectSizes = Operations['effectSizes']
 
 /** @throws InputError for a candidate that has no solution, or that does not license a comparison of groups */
-export async function effectSizes(bench: Bench, { candidate }: EffectSizes['input']): Promise<EffectSizes['result']> {
-  const { plan, entry, gamma } = fittedEntry(bench, candidate)
+export async function effectSizes(study: OpenStudy, { candidate }: EffectSizes['input']): Promise<EffectSizes['result']> {
+  const { plan, entry, gamma } = fittedEntry(study, candidate)
   const { cells, sample } = entry
   const { comparisons, refused } = comparableFactors(candidate, cells)
   const { states } = solutionOf(entry, gamma, plan)

@@ -6,7 +6,7 @@ import { type Difference, type MeanDifference, meanDifferences } from '../statis
 import { listed } from '../statistics/model/cell-words.ts'
 import { resolveCandidate } from '../study/candidate-model.ts'
 import type { Candidate } from '../study/study.ts'
-import type { Bench } from './bench.ts'
+import type { OpenStudy } from './bench.ts'
 import { type Comparison, comparableFactors } from './comparable-factors.ts'
 import type { LatentMeanView, Operations, RefusedComparison } from './contract.ts'
 import { entriesOf } from './entries.ts'
@@ -16,12 +16,12 @@ import { type FittedEntry, fittedEntry, type Solution, solutionOf } from './solv
 type LatentMeans = Operations['latentMeans']
 
 /** @throws InputError for a candidate that has no solution, or that does not license a comparison of groups */
-export async function latentMeans(bench: Bench, { candidate }: LatentMeans['input']): Promise<LatentMeans['result']> {
-  const fitted = fittedEntry(bench, candidate)
+export async function latentMeans(study: OpenStudy, { candidate }: LatentMeans['input']): Promise<LatentMeans['result']> {
+  const fitted = fittedEntry(study, candidate)
   const { comparisons, refused } = comparableFactors(candidate, fitted.entry.cells)
   const [open, heldEqual] = apartFromHeldMeans(comparisons, fitted)
   const own = differences(solutionOf(fitted.entry, fitted.gamma, fitted.plan), open)
-  const held = await withNothingLetGo(bench, fitted)
+  const held = await withNothingLetGo(study, fitted)
   const others = held === null ? null : differences(held, open)
   const views = own.map((one, i) => meanView(one, open[i]!.restsOn, others?.[i] ?? null))
   return { differences: views, refused: [...refused, ...heldEqual], sentence: summary(candidate, views) }
@@ -48,7 +48,7 @@ function apartFromHeldMeans(comparisons: readonly Comparison[], { entry }: Fitte
 }
 
 /** The solution of the same model with every release taken back: the recorded one, else fitted here. Null when there is none. */
-async function withNothingLetGo(bench: Bench, { plan, family, entry }: FittedEntry): Promise<Solution | null> {
+async function withNothingLetGo(study: OpenStudy, { plan, family, entry }: FittedEntry): Promise<Solution | null> {
   const { name, factors, scaling, factorCovariances, across, equal, except, changes } = resolveCandidate(
     entry.candidate.name,
     family.candidates
@@ -65,14 +65,14 @@ async function withNothingLetGo(bench: Bench, { plan, family, entry }: FittedEnt
     except: [],
     change: changes
   }
-  const project = bench.requireProject()
+  const project = study.requireProject()
   const alone = familyOf({ ...plan, candidates: [strict], ladders: [] })
-  const [other] = entriesOf(plan, project.data(), bench.parts.version, alone)
+  const [other] = entriesOf(plan, project.data(), study.parts.version, alone)
   const { cells, sample, digest } = other!
   const { convention } = plan.estimation
   const outcome =
     project.fits().get(digest) ??
-    (await bench.parts.crew.fit({
+    (await study.parts.crew.fit({
       kind: 'fit',
       candidate: name,
       cells,

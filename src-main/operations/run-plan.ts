@@ -7,12 +7,14 @@ import { createInMemoryProject, createProjectFile, openProjectFile, type Project
 import type { Clock } from '../project/records.ts'
 import { InputError } from '../study/input-error.ts'
 import { standingLadders } from '../study/ladders.ts'
+import { didYouMean } from '../study/nearest.ts'
 import type { StabilityResult, StudyResult } from '../study/result.ts'
 import type { Candidate, DataSet, LadderPlan, Plan } from '../study/study.ts'
 import type { Crew } from '../workers/jobs.ts'
 import type { ReadFile } from './bench.ts'
 import type { WorkEvent } from './contract.ts'
 import { checkFamily, familyOf } from './family.ts'
+import { type Inspection, inspect } from './inspect.ts'
 import { ladderStability, type Resampling, requireCases } from './ladder-stability.ts'
 import { type ReadPlan, readPlanFile } from './open-study.ts'
 import { compareRecorded, noteStopped, recordJudgements } from './recorded-work.ts'
@@ -27,6 +29,8 @@ export interface PlanToRun {
   clock: Clock
   /** Resample every ladder too; null for no resampling. */
   resampling?: Resampling | null
+  /** Candidates to look into more closely. */
+  inspect?: readonly string[]
   onWork?: (event: WorkEvent) => void
   signal?: AbortSignal
 }
@@ -35,6 +39,7 @@ export interface PlanRun {
   result: StudyResult
   plan: Plan
   data: DataSet
+  inspections: Inspection[]
 }
 
 /**
@@ -46,6 +51,7 @@ export interface PlanRun {
 export async function runPlan(run: PlanToRun): Promise<PlanRun> {
   const read = await readPlanFile(run.planPath, run.readFile)
   if (run.resampling != null) requireCases(read.data)
+  for (const name of run.inspect ?? []) requireCandidate(name, read.plan)
   const project = projectFor(read, run)
   try {
     const { plan, data } = read
@@ -54,19 +60,27 @@ export async function runPlan(run: PlanToRun): Promise<PlanRun> {
     const options = { ...(run.onWork && { onWork: run.onWork }), ...(run.signal && { signal: run.signal }) }
     const result = await compareRecorded(work, run.crew, options)
     recordJudgements(project, result, plan)
-    if (run.resampling == null) return { result, plan, data }
+    const inspections: Inspection[] = []
+    for (const name of run.inspect ?? []) inspections.push(await inspect({ requireProject: () => project, parts: run }, name))
+    if (run.resampling == null) return { result, plan, data, inspections }
     const stability: StabilityResult[] = []
     for (const ladder of standingLadders(plan.ladders)) {
       stability.push(await ladderStability({ project, plan, result, ...run }, ladder, run.resampling, options))
       run.signal?.throwIfAborted()
     }
-    return { result: { ...result, stability }, plan, data }
+    return { result: { ...result, stability }, plan, data, inspections }
   } catch (error) {
     if (run.signal?.aborted === true) noteStopped(project)
     throw error
   } finally {
     project.close()
   }
+}
+
+function requireCandidate(name: string, plan: Plan): void {
+  const names = familyOf(plan).candidates.map((candidate) => candidate.name)
+  if (!names.includes(name))
+    throw new InputError(`There is no candidate "${name}".`, { remedy: didYouMean(name, names, 'candidates') })
 }
 
 /** The project to record in, holding everything the plan names. */

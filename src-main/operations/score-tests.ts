@@ -8,7 +8,7 @@ import type { ModelCells } from '../statistics/model/cells.ts'
 import { compileModel } from '../statistics/model/compile.ts'
 import { equationWords } from '../study/change-words.ts'
 import { InputError } from '../study/input-error.ts'
-import type { Bench } from './bench.ts'
+import type { OpenStudy } from './bench.ts'
 import type { Operations } from './contract.ts'
 import { entriesOf } from './entries.ts'
 import { familyOf } from './family.ts'
@@ -16,10 +16,10 @@ import { familyOf } from './family.ts'
 type ScoreTests = Operations['scoreTests']
 
 /** Computed from the recorded solution. Throws InputError for a candidate that is unknown or has no solution. */
-export async function scoreTests(bench: Bench, { candidate }: ScoreTests['input']): Promise<ScoreTests['result']> {
-  const project = bench.requireProject()
+export async function scoreTests(study: OpenStudy, { candidate }: ScoreTests['input']): Promise<ScoreTests['result']> {
+  const project = study.requireProject()
   const plan = project.plan()
-  const entry = entriesOf(plan, project.data(), bench.parts.version, familyOf(plan)).find((e) => e.candidate.name === candidate)
+  const entry = entriesOf(plan, project.data(), study.parts.version, familyOf(plan)).find((e) => e.candidate.name === candidate)
   if (entry === undefined) throw new InputError(`There is no candidate "${candidate}".`)
   const gamma = project.fits().get(entry.digest)?.gamma ?? null
   if (gamma === null) {
@@ -27,7 +27,7 @@ export async function scoreTests(bench: Bench, { candidate }: ScoreTests['input'
   }
   const { cells, sample } = entry
   const settings = { convention: plan.estimation.convention }
-  const { tests, untested, unavailable } = await bench.parts.crew.scoreTests({
+  const { tests, untested, unavailable } = await study.parts.crew.scoreTests({
     kind: 'score tests',
     cells,
     moments: sample.moments,

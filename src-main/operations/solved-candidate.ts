@@ -8,7 +8,7 @@ import type { GroupState } from '../statistics/model/implied-moments.ts'
 import { InputError } from '../study/input-error.ts'
 import { didYouMean } from '../study/nearest.ts'
 import type { Plan } from '../study/study.ts'
-import type { Bench } from './bench.ts'
+import type { OpenStudy } from './bench.ts'
 import { type Entry, entriesOf } from './entries.ts'
 import { type Family, familyOf } from './family.ts'
 
@@ -20,11 +20,11 @@ export interface FittedEntry {
 }
 
 /** @throws InputError for a candidate that is unknown or has no solution */
-export function fittedEntry(bench: Bench, candidate: string): FittedEntry {
-  const project = bench.requireProject()
+export function fittedEntry(study: OpenStudy, candidate: string): FittedEntry {
+  const project = study.requireProject()
   const plan = project.plan()
   const family = familyOf(plan)
-  const entry = entriesOf(plan, project.data(), bench.parts.version, family).find((e) => e.candidate.name === candidate)
+  const entry = entriesOf(plan, project.data(), study.parts.version, family).find((e) => e.candidate.name === candidate)
   if (entry === undefined) {
     const names = family.candidates.map(({ name }) => name)
     throw new InputError(`There is no candidate "${candidate}".`, {

@@ -6,7 +6,7 @@
 import type { StudyResult } from '../study/result.ts'
 
 /** The result as JSON text, two spaces deep, with a line end. Throws when a number in it is not finite or a field undefined. */
-export function resultJson(result: StudyResult): string {
+export function resultJson(result: StudyResult & { inspections?: readonly object[] }): string {
   assertPlain(result, 'result')
   return JSON.stringify(result, positiveZero, 2) + '\n'
 }

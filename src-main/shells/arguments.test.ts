@@ -10,21 +10,31 @@ describe('the words after rungwise', () => {
     [['compare', '--help'], { do: 'help' }],
     [['open'], { do: 'open', file: null }],
     [['open', 'a.rungwise'], { do: 'open', file: 'a.rungwise' }],
-    [['compare', 'p.yaml'], { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: null }],
-    [['compare', '--json', '-', 'p.yaml'], { do: 'compare', plan: 'p.yaml', project: null, json: '-', resampling: null }],
+    [['compare', 'p.yaml'], { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: null, inspect: null }],
+    [
+      ['compare', '--json', '-', 'p.yaml'],
+      { do: 'compare', plan: 'p.yaml', project: null, json: '-', resampling: null, inspect: null }
+    ],
     [
       ['compare', 'p.yaml', '--project=s.rungwise', '--json=r=1.json'],
-      { do: 'compare', plan: 'p.yaml', project: 's.rungwise', json: 'r=1.json', resampling: null }
+      { do: 'compare', plan: 'p.yaml', project: 's.rungwise', json: 'r=1.json', resampling: null, inspect: null }
     ],
     [
       ['compare', 'p.yaml', '--resamples', '500', '--seed=7'],
-      { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: { resamples: 500, seed: 7 } }
+      { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: { resamples: 500, seed: 7 }, inspect: null }
     ],
     [
       ['compare', 'p.yaml', '--resamples=500'],
-      { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: { resamples: 500, seed: 1 } }
+      { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: { resamples: 500, seed: 1 }, inspect: null }
     ],
-    [['compare', '--', '--odd.yaml'], { do: 'compare', plan: '--odd.yaml', project: null, json: null, resampling: null }]
+    [
+      ['compare', 'p.yaml', '--inspect', 'Two factors'],
+      { do: 'compare', plan: 'p.yaml', project: null, json: null, resampling: null, inspect: 'Two factors' }
+    ],
+    [
+      ['compare', '--', '--odd.yaml'],
+      { do: 'compare', plan: '--odd.yaml', project: null, json: null, resampling: null, inspect: null }
+    ]
   ])('%j is understood', (words, command) => {
     expect(readArguments(words)).toEqual(command)
   })
@@ -39,6 +49,7 @@ describe('the words after rungwise', () => {
     [['compare', 'a.yaml', 'b.yaml'], 'takes one file, and 2 were given'],
     [['open', 'a', 'b'], 'takes one file, and 2 were given'],
     [['compare', 'a.yaml', '--json'], '--json needs a file name'],
+    [['compare', 'a.yaml', '--inspect'], "--inspect needs a candidate's name"],
     [['compare', 'a.yaml', '--json', '--project', 's'], '--json needs a file name'],
     [['compare', 'a.yaml', '--project', '-'], 'cannot go to standard output'],
     [['compare', 'a.yaml', '--json', 'b', '--json', 'c'], 'given twice'],

@@ -13,6 +13,7 @@ export type Command =
       project: string | null
       json: string | null
       resampling: { resamples: number; seed: number } | null
+      inspect: string | null
     }
   | { do: 'open'; file: string | null }
 
@@ -22,6 +23,7 @@ one can stand.
 Usage:
   rungwise compare PLAN.yaml [--project FILE] [--json FILE]
                              [--resamples NUMBER] [--seed NUMBER]
+                             [--inspect CANDIDATE]
   rungwise open [FILE]
   rungwise --help
   rungwise --version
@@ -34,6 +36,8 @@ compare   fits the plan's candidates and prints each ladder, top rung first.
   --resamples N    also refit each ladder to so many resamples of the cases, and
                    tell how often each step holds
   --seed N         which resamples are drawn (1 unless given)
+  --inspect NAME   also look into this candidate: score tests, effect sizes,
+                   differences of factor means
 open      opens the window on a plan, a project file, or the sample study.
 
 Exit status: 0 done, 1 a fault of the program, 2 bad input (one message on
@@ -42,7 +46,7 @@ standard error, nothing written), 130 interrupted.
 
 const commands = ['compare', 'open', 'help', 'version'] as const
 const optionsOf = {
-  compare: ['--project', '--json', '--resamples', '--seed', '--help', '--version'],
+  compare: ['--project', '--json', '--resamples', '--seed', '--inspect', '--help', '--version'],
   open: ['--help', '--version']
 } as const
 
@@ -69,13 +73,26 @@ export function readArguments(words: readonly string[]): Command {
 }
 
 function readCompare(words: readonly string[]): Command {
-  const { files, values, asked } = sortWords(words, optionsOf.compare, ['--project', '--json', '--resamples', '--seed'])
+  const { files, values, asked } = sortWords(words, optionsOf.compare, [
+    '--project',
+    '--json',
+    '--resamples',
+    '--seed',
+    '--inspect'
+  ])
   if (asked !== null) return { do: asked }
   const plan = onlyFile(files, 'compare')
   if (plan === null) throw new InputError('compare needs a plan file.', { remedy: 'Write: rungwise compare PLAN.yaml' })
   const project = values.get('--project') ?? null
   if (project === '-') throw new InputError('--project needs a file; a project cannot go to standard output.')
-  return { do: 'compare', plan, project, json: values.get('--json') ?? null, resampling: readResampling(values) }
+  return {
+    do: 'compare',
+    plan,
+    project,
+    json: values.get('--json') ?? null,
+    resampling: readResampling(values),
+    inspect: values.get('--inspect') ?? null
+  }
 }
 
 const mostResamples = 100_000
@@ -137,7 +154,8 @@ const numbered = ['--resamples', '--seed']
 
 function takeValue(values: Map<string, string>, option: string, value: string | undefined): void {
   if (value === undefined || value === '' || (value.startsWith('-') && value !== '-')) {
-    throw new InputError(`${option} needs a ${numbered.includes(option) ? 'number' : 'file name'} after it.`)
+    const wanted = numbered.includes(option) ? 'number' : option === '--inspect' ? "candidate's name" : 'file name'
+    throw new InputError(`${option} needs a ${wanted} after it.`)
   }
   if (values.has(option)) throw new InputError(`${option} is given twice.`)
   values.set(option, value)

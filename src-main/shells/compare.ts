@@ -3,6 +3,7 @@
  */
 import { resolve } from 'node:path'
 import type { WorkEvent } from '../operations/contract.ts'
+import { inspectionText } from '../operations/inspect.ts'
 import { type PlanRun, runPlan } from '../operations/run-plan.ts'
 import { resultJson } from '../reporting/result-json.ts'
 import { studyText } from '../reporting/text-ladder.ts'
@@ -21,6 +22,8 @@ export interface CompareWords {
   json: string | null
   /** Resample every ladder; null for no resampling. */
   resampling: { resamples: number; seed: number } | null
+  /** A candidate to look into more closely; null for none. */
+  inspect: string | null
 }
 
 /** Who fits; a pool of worker threads unless a test brings its own crew. */
@@ -40,6 +43,7 @@ export async function compare(words: CompareWords, around: Surroundings, crewMak
       planPath: paths.plan,
       projectPath: paths.project,
       resampling: words.resampling,
+      inspect: words.inspect === null ? [] : [words.inspect],
       readFile: readUserFile,
       crew,
       version: files.version,
@@ -70,12 +74,13 @@ async function resolvePaths(words: CompareWords, folder: string): Promise<Compar
   if (written.includes(plan)) throw new InputError('The plan would be written over.', { where: plan, remedy: 'Name another file.' })
   if (project !== null && project === json) throw new InputError('--project and --json name the same file.', { where: project })
   for (const path of written) await assertWritablePlace(path!)
-  return { plan, project, json, resampling: words.resampling }
+  return { ...words, plan, project, json }
 }
 
 /** JSON alone on standard output, or the text there and the JSON in its file. */
 async function print(run: PlanRun, json: string | null, around: Surroundings): Promise<void> {
-  const text = json === null ? null : resultJson(run.result)
+  const { result, inspections } = run
+  const text = json === null ? null : resultJson(inspections.length === 0 ? result : { ...result, inspections })
   if (json === '-') {
     around.stdout.write(text!)
     return
@@ -83,4 +88,5 @@ async function print(run: PlanRun, json: string | null, around: Surroundings): P
   if (text !== null) await writeWhole(json!, text)
   around.stdout.write(studyText({ result: run.result, estimation: run.plan.estimation, rules: run.plan.rules }))
   around.stdout.write(stabilityText(run.result.stability ?? []))
+  for (const inspection of inspections) around.stdout.write(inspectionText(inspection))
 }

@@ -33,7 +33,7 @@ describe('npx rungwise', () => {
     const { status, stdout, stderr } = await rungwise(['compare', congeneric, '--jsn', '-'], { node: machineNode() })
     expect({ status, stdout }).toEqual({ status: 2, stdout: '' })
     expect(stderr).toBe(
-      'There is no option "--jsn". Did you mean "--json"? The options are "--project", "--json", "--resamples", "--seed", "--help" and "--version".\n'
+      'There is no option "--jsn". Did you mean "--json"? The options are "--project", "--json", "--resamples", "--seed", "--inspect", "--help" and "--version".\n'
     )
   })
 

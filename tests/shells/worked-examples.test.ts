@@ -4,6 +4,7 @@
  */
 import { join } from 'node:path'
 import { describe, expect, test } from 'vitest'
+import type { Inspection } from '../../src-main/operations/inspect.ts'
 import type { StudyResult } from '../../src-main/study/result.ts'
 import { readExample } from '../reference/examples.ts'
 import { root, rungwise } from './program.ts'
@@ -170,4 +171,54 @@ test('two structures that are not nested get no chi-square difference', async ()
   expect([difference, verdict, relation, noTest]).toEqual([null, 'no test', 'not nested', 'not nested'])
   // 09a: AIC of A less that of B is -42.20.
   expect(deltaAic).toBeCloseTo(42.201, 3)
+})
+
+interface Looked extends StudyResult {
+  inspections: Inspection[]
+}
+
+async function look(folder: string, plan: string, name: string): Promise<Inspection> {
+  const words = ['compare', join(root, 'fixtures', folder, plan), '--inspect', name, '--json', '-']
+  const { status, stdout, stderr } = await rungwise(words)
+  expect({ status, stderr }).toEqual({ status: 0, stderr: '' })
+  return (JSON.parse(stdout) as Looked).inspections[0]!
+}
+
+test('score tests of equal loadings are those of 08b, corrected as its notes say (Anderson 1935; Fisher 1936)', async () => {
+  interface Release {
+    released: string
+    LM: number
+    change_from_the_others: number
+  }
+  const { expected } = readExample<{ expected: { equal_loadings: { single_releases: Release[] } } }>(
+    '08b_iris_equality_constraint_score_tests.json'
+  )
+  const { scoreTests, refused } = await look('iris', 'plan.yaml', 'One size factor, metric')
+  expect(scoreTests!.tests.length).toBeGreaterThan(0)
+  for (const { released, LM, change_from_the_others } of expected.equal_loadings.single_releases) {
+    const [, indicator, group] = /^loading of (.+) in (.+)$/.exec(released)!
+    const own = scoreTests!.tests.find((t) => t.part === 'loading' && t.of[0] === indicator && t.group === group)!
+    expect(Math.abs(own.statistic / LM - 1), released).toBeLessThan(1e-4)
+    expect(Math.abs(own.change / change_from_the_others - 1), released).toBeLessThan(1e-4)
+  }
+  // Equal loadings alone license no comparison of means, and the text says why.
+  expect(refused.join(' ')).toContain('One size factor, metric')
+})
+
+test('sizes of non-invariance are those of 13 (Nye & Drasgow 2011), with differences of factor means', async () => {
+  type Sizes = Record<string, { dMACS_weighted_mean_of_sds: number; delta_intercept_reference_minus_focal: number }>
+  const { expected } = readExample<{ expected: Record<string, { T: number; dMACS: Sizes }> }>('13_dmacs_latent_means.json')
+  const { dMACS } = expected['partial_intercept_and_loading_y2_free_in_g2_and_g3']!
+  const { effectSizes, latentMeans } = await look('two-factors', 'partial.yaml', 'Loading and intercept of y2 let go')
+  for (const [reference, focal] of [
+    ['g1', 'g2'],
+    ['g1', 'g3'],
+    ['g2', 'g3']
+  ]) {
+    const own = effectSizes!.sizes.find((s) => s.indicator === 'y2' && s.reference === reference && s.focal === focal)!
+    const { dMACS_weighted_mean_of_sds, delta_intercept_reference_minus_focal } = dMACS[`y2_reference_${reference}_focal_${focal}`]!
+    expect(Math.abs(own.dmacs! - dMACS_weighted_mean_of_sds)).toBeLessThan(1e-5)
+    expect(Math.abs(own.interceptDifference - delta_intercept_reference_minus_focal)).toBeLessThan(1e-4)
+  }
+  expect(latentMeans!.differences.length).toBe(6)
 })

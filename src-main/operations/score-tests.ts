@@ -10,21 +10,13 @@ import { equationWords } from '../study/change-words.ts'
 import { InputError } from '../study/input-error.ts'
 import type { OpenStudy } from './bench.ts'
 import type { Operations } from './contract.ts'
-import { entriesOf } from './entries.ts'
-import { familyOf } from './family.ts'
+import { fittedEntry } from './solved-candidate.ts'
 
 type ScoreTests = Operations['scoreTests']
 
 /** Computed from the recorded solution. Throws InputError for a candidate that is unknown or has no solution. */
 export async function scoreTests(study: OpenStudy, { candidate }: ScoreTests['input']): Promise<ScoreTests['result']> {
-  const project = study.requireProject()
-  const plan = project.plan()
-  const entry = entriesOf(plan, project.data(), study.parts.version, familyOf(plan)).find((e) => e.candidate.name === candidate)
-  if (entry === undefined) throw new InputError(`There is no candidate "${candidate}".`)
-  const gamma = project.fits().get(entry.digest)?.gamma ?? null
-  if (gamma === null) {
-    throw new InputError(`"${candidate}" has no solution to test.`, { remedy: 'Fit it first; a fit that failed has none.' })
-  }
+  const { plan, entry, gamma } = fittedEntry(study, candidate, 'to test')
   const { cells, sample } = entry
   const settings = { convention: plan.estimation.convention }
   const { tests, untested, unavailable } = await study.parts.crew.scoreTests({

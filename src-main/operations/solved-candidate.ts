@@ -19,8 +19,11 @@ export interface FittedEntry {
   gamma: number[]
 }
 
-/** @throws InputError for a candidate that is unknown or has no solution */
-export function fittedEntry(study: OpenStudy, candidate: string): FittedEntry {
+/**
+ * @param purpose what the solution is wanted for, as the message has it: "to test"
+ * @throws InputError for a candidate that is unknown or has no solution
+ */
+export function fittedEntry(study: OpenStudy, candidate: string, purpose: string | null = null): FittedEntry {
   const project = study.requireProject()
   const plan = project.plan()
   const family = familyOf(plan)
@@ -34,7 +37,7 @@ export function fittedEntry(study: OpenStudy, candidate: string): FittedEntry {
   }
   const gamma = project.fits().get(entry.digest)?.gamma ?? null
   if (gamma === null) {
-    throw new InputError(`"${candidate}" has no solution.`, {
+    throw new InputError(`"${candidate}" has no solution${purpose === null ? '' : ` ${purpose}`}.`, {
       where: 'candidate',
       remedy: 'Fit it first; a fit that failed has none.'
     })

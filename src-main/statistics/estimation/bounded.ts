@@ -6,6 +6,7 @@
  * minimum the slope of F says of each held parameter whether F still falls into the allowed side (Karush, Kuhn & Tucker):
  * the one where it falls fastest is let go, until none is left. No randomness: the same start gives the same solution.
  */
+import { submatrix } from '../matrix/symmetric.ts'
 import type { GammaBounds } from '../model/compile.ts'
 import type { Objective } from './normal-likelihood.ts'
 import { type Minimum, minimise, ordinaryScoring, type ScoringSettings } from './scoring.ts'
@@ -41,14 +42,6 @@ export function heldAtBounds(bounds: GammaBounds | null, gamma: ArrayLike<number
   const held: number[] = []
   for (let k = 0; k < gamma.length; k++) if (gamma[k] === bounds.least[k] || gamma[k] === bounds.most[k]) held.push(k)
   return held
-}
-
-/** The rows and columns `free` of a q x q matrix. */
-export function submatrix(matrix: Float64Array, q: number, free: readonly number[]): Float64Array {
-  return Float64Array.from({ length: free.length ** 2 }, (_, at) => {
-    const i = free[Math.floor(at / free.length)]!
-    return matrix[i * q + free[at % free.length]!]!
-  })
 }
 
 interface Problem {

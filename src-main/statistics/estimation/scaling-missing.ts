@@ -11,7 +11,7 @@
  *
  * A is of the order of the moments, so unlike complete data this needs a matrix of that size a group.
  */
-import { cholesky, choleskySolve, mirrorLower, multiply } from '../matrix/symmetric.ts'
+import { cholesky, choleskySolve, mirrorLower, multiply, submatrix } from '../matrix/symmetric.ts'
 import type { ModelCells } from '../model/cells.ts'
 import { type CompiledModel, compileModel } from '../model/compile.ts'
 import type { GroupState } from '../model/implied-moments.ts'
@@ -133,14 +133,6 @@ export function missingBaselineScaling(moments: SampleMoments, rows: readonly Fl
 function isMeanOrVariance(label: string): boolean {
   const [kind, i, j] = label.split(' ')
   return kind === 'm' || i === j
-}
-
-/** Rows and columns of a lower triangle. */
-function submatrix(a: Float64Array, n: number, selected: readonly number[]): Float64Array {
-  const k = selected.length
-  const out = new Float64Array(k * k)
-  for (let i = 0; i < k; i++) for (let j = 0; j <= i; j++) out[i * k + j] = a[selected[i]! * n + selected[j]!]!
-  return out
 }
 
 /** tr(A^-1 B) of two lower triangles; null when A is not positive definite. A is overwritten. */

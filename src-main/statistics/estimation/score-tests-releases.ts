@@ -4,6 +4,7 @@
  * in the model as it stands. So a cell let go from an equality is its class's common value plus delta.
  */
 import { Matrix, pseudoInverse } from 'ml-matrix'
+import { partAt } from '../model/cell-words.ts'
 import type { CellPart, LinearConstraint } from '../model/cells.ts'
 import type { CompiledGroup, CompiledModel, FreeCell, MatrixName } from '../model/compile.ts'
 
@@ -37,18 +38,9 @@ export function placeKey({ matrix, row, column }: Pick<FreeCell, 'matrix' | 'row
   return `${matrix} ${row} ${column}`
 }
 
-const partOf: Record<MatrixName, [off: CellPart, diagonal: CellPart]> = {
-  lambda: ['loading', 'loading'],
-  beta: ['factor regression', 'factor regression'],
-  psi: ['factor covariance', 'factor variance'],
-  theta: ['residual covariance', 'residual variance'],
-  nu: ['intercept', 'intercept'],
-  alpha: ['factor mean', 'factor mean']
-}
-
 function named(model: CompiledModel, { matrix, row, column, group }: CellPlace): Pick<Release, 'part' | 'of' | 'group'> {
   const { indicators, factors } = model
-  const part = partOf[matrix][row === column ? 1 : 0]
+  const part = partAt({ matrix, row, column })
   const name = model.groups[group]!.name
   if (matrix === 'lambda') return { part, of: [indicators[row]!, factors[column]!], group: name }
   if (matrix === 'beta') return { part, of: [factors[row]!, factors[column]!], group: name }

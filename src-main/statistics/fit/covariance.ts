@@ -2,10 +2,9 @@
  * The covariance matrix of the estimates (q x q), from the information the plan asks for (methods: sections 2 to 4).
  */
 
-import { submatrix } from '../estimation/bounded.ts'
 import { scoreCrossProducts } from '../estimation/casewise.ts'
 import type { Objective } from '../estimation/normal-likelihood.ts'
-import { cholesky, choleskyInverse, envelope, mirrorLower, multiply } from '../matrix/symmetric.ts'
+import { mirrorLower, multiply, positiveInverse, submatrix } from '../matrix/symmetric.ts'
 import type { CompiledModel } from '../model/compile.ts'
 import type { StandardErrorKind } from './settings.ts'
 
@@ -42,9 +41,9 @@ export function estimateCovariance(
 
 /** The inverse over the gammas not held, with zeros for the held ones. */
 function invertFree(information: Float64Array, q: number, held: readonly number[]): Float64Array | null {
-  if (held.length === 0) return invert(information, q)
+  if (held.length === 0) return positiveInverse(information, q)
   const free = Array.from({ length: q }, (_, k) => k).filter((k) => !held.includes(k))
-  const small = invert(submatrix(information, q, free), free.length)
+  const small = positiveInverse(submatrix(information, q, free), free.length)
   if (small === null) return null
   const inverse = new Float64Array(q * q)
   free.forEach((k, i) => {
@@ -52,14 +51,5 @@ function invertFree(information: Float64Array, q: number, held: readonly number[
       inverse[k * q + l] = small[i * free.length + j]!
     })
   })
-  return inverse
-}
-
-function invert(information: Float64Array, q: number): Float64Array | null {
-  const first = new Int32Array(q)
-  envelope(information, q, first)
-  if (!cholesky(information, q, information, first)) return null
-  const inverse = new Float64Array(q * q)
-  choleskyInverse(information, q, inverse, first)
   return inverse
 }

@@ -6,10 +6,11 @@
  * A fit that fails is a value with its reason, never an exception.
  */
 import { seededGenerator } from '../distributions/generator.ts'
-import { heldAtBounds, submatrix } from '../estimation/bounded.ts'
+import { heldAtBounds } from '../estimation/bounded.ts'
 import { nullSpaceParameters, unidentifiedLabels } from '../estimation/identification.ts'
 import { normalObjective } from '../estimation/normal-likelihood.ts'
 import { type Minimum, ordinaryScoring } from '../estimation/scoring.ts'
+import { submatrix } from '../matrix/symmetric.ts'
 import { listed } from '../model/cell-words.ts'
 import type { ModelCells } from '../model/cells.ts'
 import { type CompiledModel, compileModel } from '../model/compile.ts'

@@ -1,16 +1,7 @@
 /** A parameter in words: the first cell that has its label. */
-import { cellWords } from '../model/cell-words.ts'
+import { cellWords, partAt } from '../model/cell-words.ts'
 import type { CellPart } from '../model/cells.ts'
-import type { CompiledModel, FreeCell, MatrixName } from '../model/compile.ts'
-
-const partOf: Record<MatrixName, [off: CellPart, diagonal: CellPart]> = {
-  lambda: ['loading', 'loading'],
-  beta: ['factor regression', 'factor regression'],
-  psi: ['factor covariance', 'factor variance'],
-  theta: ['residual covariance', 'residual variance'],
-  nu: ['intercept', 'intercept'],
-  alpha: ['factor mean', 'factor mean']
-}
+import type { CompiledModel, FreeCell } from '../model/compile.ts'
 
 export function labelWords(model: CompiledModel, label: string): string {
   for (const group of model.groups) {
@@ -27,5 +18,5 @@ export function partOfCell(model: CompiledModel, { matrix, row, column }: FreeCe
   const rows = matrix === 'lambda' || matrix === 'theta' || matrix === 'nu' ? model.indicators : model.factors
   const columns = matrix === 'theta' ? model.indicators : model.factors
   const single = matrix === 'nu' || matrix === 'alpha' || (row === column && (matrix === 'psi' || matrix === 'theta'))
-  return { part: partOf[matrix][row === column ? 1 : 0], of: single ? [rows[row]!] : [rows[row]!, columns[column]!] }
+  return { part: partAt({ matrix, row, column }), of: single ? [rows[row]!] : [rows[row]!, columns[column]!] }
 }

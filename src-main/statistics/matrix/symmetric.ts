@@ -264,6 +264,12 @@ function addFourRows(l: Float64Array, n: number, ri: number, k: number, from: nu
   row[k + 3]! += l3 * l[r3 + k + 3]!
 }
 
+/** The rows and columns `selected` of an n x n matrix; of a lower triangle (their order ascending) the lower triangle. */
+export function submatrix(a: Float64Array, n: number, selected: readonly number[]): Float64Array {
+  const k = selected.length
+  return Float64Array.from({ length: k * k }, (_, at) => a[selected[Math.floor(at / k)]! * n + selected[at % k]!]!)
+}
+
 /** Copies the lower triangle onto the upper. */
 export function mirrorLower(a: Float64Array, n: number): void {
   for (let i = 1; i < n; i++) for (let j = 0; j < i; j++) a[j * n + i] = a[i * n + j]!

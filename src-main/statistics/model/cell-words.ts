@@ -1,5 +1,20 @@
-/** A cell in words, for sentences about it. */
+/** Cells by their names and in words, for sentences about them. */
 import type { CellPart } from './cells.ts'
+import type { FreeCell, MatrixName } from './compile.ts'
+
+const partOf: Record<MatrixName, [off: CellPart, diagonal: CellPart]> = {
+  lambda: ['loading', 'loading'],
+  beta: ['factor regression', 'factor regression'],
+  psi: ['factor covariance', 'factor variance'],
+  theta: ['residual covariance', 'residual variance'],
+  nu: ['intercept', 'intercept'],
+  alpha: ['factor mean', 'factor mean']
+}
+
+/** What a cell of the model's matrices is called. */
+export function partAt({ matrix, row, column }: Pick<FreeCell, 'matrix' | 'row' | 'column'>): CellPart {
+  return partOf[matrix][row === column ? 1 : 0]
+}
 
 /** "the loading of sleep on Body", "the residual covariance of sleep with worry", in a group where one is named. */
 export function cellWords(part: CellPart, of: readonly string[], group: string | null = null): string {
